@@ -1,0 +1,46 @@
+// What stands on the site, as checked values with units. Loading and its errors are beside this file.
+import type { AxisSetup } from '../../drivers/positioner/positioner.ts';
+
+/** Where a device is reached; so far TCP alone. */
+export interface LinkAddress {
+  kind: 'tcp';
+  host: string;
+  port: number;
+}
+
+export interface RangeAxis extends AxisSetup {
+  /** Pattern angle = sense × (position − boresightDeg), wrapped to (−180°, 180°]. */
+  sense: 1 | -1;
+  boresightDeg: number;
+}
+
+export interface ReferenceAntenna {
+  name: string;
+  /** `ieee`: without mismatch loss, corrected with the measured S11; `realized`: with it. */
+  stated: 'ieee' | 'realized';
+  /** Ascending in frequency; interpolated linearly in between, never beyond its ends. */
+  table: readonly { frequencyHz: number; gainDbi: number }[];
+  /** Standard uncertainty of the table where its owner knows it. */
+  uncertaintyDb?: number;
+}
+
+export interface RangeFile {
+  /** Absolute path and text as read. */
+  path: string;
+  text: string;
+  name: string;
+  rangeLengthM: number;
+  heights?: { rangeAntennaM: number; autM: number };
+  analyzer: {
+    link: LinkAddress;
+    dialect: string;
+    /** The port the AUT is connected to; the range antenna is on the other of 1 and 2. */
+    autPort: 1 | 2;
+    trace: { format: 'real64' | 'real32' | 'ascii'; byteOrder: 'normal' | 'swapped' };
+  };
+  positioner: { link: LinkAddress; family: 'realtime-status'; axes: readonly RangeAxis[] };
+  rangeAntenna: string;
+  reference?: ReferenceAntenna;
+  /** Absolute path of the archive. */
+  archive: string;
+}

@@ -1,0 +1,3 @@
+import { render } from 'preact';
+
+render(<p>Nightcut</p>, document.getElementById('page')!);
