@@ -139,6 +139,16 @@ export const adviceTable: Readonly<Record<ErrorCode, Advice>> = {
     nextStep: 'The run does this by itself; if it recurs, look for a second program on the same session.',
     exitCode: hardware,
   },
+  ANALYZER_INTERRUPTED: {
+    meaning: 'Switching the source off overtook what the analyzer was asked to do.',
+    nextStep: 'Nothing is wrong with the analyzer; measure again when it is safe to.',
+    exitCode: hardware,
+  },
+  ANALYZER_BAD_DIALECT: {
+    meaning: 'The analyzer dialect lacks a command, or a command of it cannot be filled in safely.',
+    nextStep: 'Correct the dialect in the range file; nothing doubtful was sent.',
+    exitCode: badInput,
+  },
   POSITIONER_NOT_ANSWERING: {
     meaning: 'The motion controller does not answer; it may still finish a move it has.',
     nextStep: 'Stand clear, check its power and cable, then measure again.',
