@@ -5,5 +5,4 @@ export default defineConfig({
   root: 'dashboard',
   base: './',
   build: { outDir: '../dist/dashboard', emptyOutDir: true, target: 'es2022', chunkSizeWarningLimit: 900 },
-  esbuild: { jsx: 'automatic', jsxImportSource: 'preact' },
 });

@@ -1,0 +1,31 @@
+// The log beside the archive: one JSON line per happening, with the bytes of whatever could not be read.
+import pino, { type Logger } from 'pino';
+import type { RunEvent } from '../run/events.ts';
+
+export interface RunLog {
+  note(event: RunEvent): void;
+  failed(error: unknown): void;
+}
+
+/** `path` is the archive's path with `.log` added; the folder exists because the archive is in it. */
+export function openRunLog(path: string): RunLog {
+  const log: Logger = pino(
+    { base: null, timestamp: pino.stdTimeFunctions.isoTime },
+    pino.destination({ dest: path, sync: true }),
+  );
+  return {
+    note(event) {
+      if (event.kind === 'sample') {
+        const { sequence, purpose, cut, angleDeg, attempt } = event.sample;
+        log.info({ sequence, purpose, cut, angleDeg, attempt }, 'sample');
+      } else if (event.kind === 'retry') log.warn({ ...event }, 'retry');
+      else if (event.kind === 'trouble') log.error({ ...event }, 'trouble');
+      else log.info({ ...event }, event.kind);
+    },
+    failed(error) {
+      const facts = (error as { facts?: unknown }).facts;
+      const code = (error as { code?: unknown }).code;
+      log.error({ err: error, code, facts }, 'failed');
+    },
+  };
+}

@@ -1,0 +1,19 @@
+#!/usr/bin/env node
+// Entry of `nightcut`: arguments in, exit code out. What each command does is in cli/.
+import { SystemClock } from '../drivers/clock.ts';
+import { runCommandLine } from './cli/command-line.ts';
+
+process.exitCode = await runCommandLine(process.argv.slice(2), {
+  clock: new SystemClock(),
+  stdout: process.stdout,
+  stderr: process.stderr,
+  folder: process.cwd(),
+  onStopSignal: (stop) => {
+    process.on('SIGINT', stop);
+    process.on('SIGTERM', stop);
+    return () => {
+      process.off('SIGINT', stop);
+      process.off('SIGTERM', stop);
+    };
+  },
+});

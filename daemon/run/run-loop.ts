@@ -1,0 +1,295 @@
+// The order of things in a run: connect, home, then for each planned step move, settle, sweep, check, keep.
+// It alone commands motion. At most one sample waits to become durable while the axes move on; the next
+// sweep starts only when it is. Whatever happens, it ends with motors still and the source off.
+//
+//   connect ─► createRun ─► segment 1 ─► step ─► step ─► … ─► safe stop ─► endRun
+//                              ▲          │ failure
+//                              └─ reopen ─┴─ again ── give up ─► safe stop ─► endRun
+import { type Observable, Subject } from 'rxjs';
+import type { SweepSetup } from '../../drivers/analyzer/analyzer.ts';
+import type { Clock } from '../../drivers/clock.ts';
+import { isDriverError } from '../../drivers/errors.ts';
+import type { Position } from '../../drivers/positioner/positioner.ts';
+import type { Archive, NewRun, RunRef, RunState, SampleRecord } from '../archive/archive.ts';
+import { DaemonError } from '../errors.ts';
+import type { PlannedStep } from '../plan/expand.ts';
+import type { Device, RunEvent } from './events.ts';
+import { measurePosition, type PositionTools, StepFailure } from './measure-position.ts';
+import { reactionTo, segmentsPerRun, triesPerPosition, waitBeforeRetryMs } from './retry-table.ts';
+import { type Bench, safeStop } from './safe-stop.ts';
+import { type Connected, connect, openSegment, type SegmentTools, waitForDevice } from './segments.ts';
+import { timeLeft } from './time-left.ts';
+
+export interface RunOrder {
+  /** What the archive freezes; the start time is filled in by the run. */
+  record: Omit<NewRun, 'startedWallMs'>;
+  sweep: SweepSetup;
+  steps: readonly PlannedStep[];
+  /** Predicted time of each step without its acquisition. */
+  motionMs: readonly number[];
+  boresight: Position;
+  /** The analyzer port of the AUT. */
+  autPort: 1 | 2;
+}
+
+export interface RunOutcome {
+  run: RunRef;
+  state: Exclude<RunState, 'running'>;
+  /** Why it did not complete. */
+  error?: unknown;
+  /** What safe stop could not confirm; empty when motors are still and the source is off. */
+  unconfirmed: unknown[];
+}
+
+export class RunLoop {
+  readonly #bench: Bench;
+  readonly #archive: Archive;
+  readonly #clock: Clock;
+  readonly #order: RunOrder;
+  readonly #events = new Subject<RunEvent>();
+  readonly #tools: SegmentTools;
+  #run: RunRef | undefined;
+  #connected: Connected | undefined;
+  #segment = 0;
+  #sequence = 0;
+  /** The one sample that may still be on its way to the disk. */
+  #pending: Promise<void> = Promise.resolve();
+
+  constructor(bench: Bench, archive: Archive, clock: Clock, order: RunOrder) {
+    this.#bench = bench;
+    this.#archive = archive;
+    this.#clock = clock;
+    this.#order = order;
+    this.#tools = { bench, archive, clock, tell: (event) => this.#tell(event) };
+  }
+
+  /** Hot; the run does not wait for watchers. */
+  get events$(): Observable<RunEvent> {
+    return this.#events;
+  }
+
+  /**
+   * Executes the whole order. Throws only while nothing has been created yet (devices not there, settings
+   * refused); from then on the outcome says what happened. Never leaves motors turning or the source on
+   * without saying so in `unconfirmed`.
+   */
+  async execute(signal: AbortSignal): Promise<RunOutcome> {
+    try {
+      this.#connected = await connect(this.#bench, this.#order.sweep, signal);
+    } catch (error) {
+      await safeStop(this.#bench);
+      throw causeOf(error, signal);
+    }
+    const clock = this.#clock;
+    const run = await clock.whileReal(
+      this.#archive.createRun({ ...this.#order.record, startedWallMs: clock.wallMs() }),
+    );
+    this.#run = run;
+    let error: unknown;
+    try {
+      await this.#measure(run, this.#connected, signal);
+    } catch (thrown) {
+      error = causeOf(thrown, signal);
+    }
+    const unconfirmed = await safeStop(this.#bench);
+    return this.#end(run, error, unconfirmed);
+  }
+
+  async #measure(run: RunRef, connected: Connected, signal: AbortSignal): Promise<void> {
+    const { steps, motionMs } = this.#order;
+    const predictedMs = motionMs.map((ms) => ms + connected.sweep.acquisitionMs);
+    const left = timeLeft(predictedMs);
+    const expectedMs = predictedMs.reduce((sum, ms) => sum + ms, 0);
+    this.#tell({ kind: 'started', run, steps: steps.length, expectedMs });
+    await this.#newSegment('start', signal);
+    const startMs = this.#clock.monotonicMs();
+    for (const [index, step] of steps.entries()) {
+      const sample = await this.#takeStep(step, signal);
+      const elapsedMs = this.#clock.monotonicMs() - startMs;
+      this.#keep(sample, index + 1, left.finished(index, elapsedMs));
+    }
+    await this.#durable();
+  }
+
+  /** One position, with as many tries as the retry table allows. */
+  async #takeStep(step: PlannedStep, signal: AbortSignal): Promise<SampleRecord> {
+    let revisit = false;
+    for (let attempt = 1; ; attempt += 1) {
+      try {
+        return await this.#sample(step, attempt, revisit, signal);
+      } catch (failure) {
+        if (!(failure instanceof StepFailure) || signal.aborted) throw failure;
+        revisit = await this.#afterFailure(failure, step, attempt, signal);
+      }
+    }
+  }
+
+  #sample(
+    step: PlannedStep,
+    attempt: number,
+    revisit: boolean,
+    signal: AbortSignal,
+  ): Promise<SampleRecord> {
+    const { autPort } = this.#order;
+    const tools: PositionTools = {
+      ...this.#bench,
+      clock: this.#clock,
+      transmission: 'S21',
+      match: autPort === 1 ? 'S11' : 'S22',
+      beforeDurable: () => this.#durable(),
+    };
+    const context = {
+      segment: this.#segment,
+      sequence: this.#sequence + 1,
+      setup: this.#segment,
+      attempt,
+      revisit,
+    };
+    return measurePosition(tools, step, context, signal);
+  }
+
+  /** Does what the retry table says, or throws; true when the axes must come back from the approach side. */
+  async #afterFailure(
+    failure: StepFailure,
+    step: PlannedStep,
+    attempt: number,
+    signal: AbortSignal,
+  ): Promise<boolean> {
+    const error = failure.cause;
+    if (!isDriverError(error)) throw error;
+    const reaction = reactionTo(error.code, failure.device);
+    if (reaction === 'give-up' || (reaction === 'rehome' && !this.#canRehome())) throw error;
+    if (attempt >= triesPerPosition) {
+      throw new DaemonError(
+        'RUN_GAVE_UP',
+        `${attempt} tries at ${step.cut || 'boresight'} ${step.angleDeg}° failed; the last: ${error.message}`,
+        { code: error.code, tries: attempt, ...error.facts },
+        error,
+      );
+    }
+    const waitMs = waitBeforeRetryMs(attempt);
+    const { device } = failure;
+    const text = factsText(error.message, error.facts);
+    await this.#note('retry', text, { device, code: error.code, attempt, ...error.facts });
+    this.#tell({ kind: 'retry', device, code: error.code, text: error.message, attempt, waitMs });
+    await this.#clock.sleep(waitMs, signal);
+    if (reaction === 'again') return device === 'positioner';
+    await this.#reopen(device, `${device}: ${error.code}`, step, signal);
+    return true;
+  }
+
+  /** A new segment after an interruption: session proven, axes homed if their reference went, and a tie. */
+  async #reopen(device: Device, reason: string, step: PlannedStep, signal: AbortSignal): Promise<void> {
+    if (this.#segment >= segmentsPerRun) {
+      throw new DaemonError('RUN_GAVE_UP', `${this.#segment} interruptions in one run`, { reason });
+    }
+    await waitForDevice(this.#tools, device, signal);
+    await this.#newSegment(reason, signal);
+    const tie: PlannedStep = { ...step, purpose: 'tie', angleDeg: 0, target: this.#order.boresight };
+    try {
+      const sample = await this.#sample(tie, 1, true, signal);
+      this.#store(sample);
+    } catch (failure) {
+      // The step's own next try meets the same trouble and counts it.
+      if (!(failure instanceof StepFailure)) throw failure;
+      await this.#note('trouble', `no tie at the start of segment ${this.#segment}: ${failure.message}`, {});
+    }
+  }
+
+  async #newSegment(reason: string, signal: AbortSignal): Promise<void> {
+    const { run, connected } = this.#open();
+    await this.#durable();
+    this.#segment += 1;
+    await this.#note('segment', reason, { segment: this.#segment });
+    await openSegment(this.#tools, run.number, this.#segment, reason, connected, signal);
+  }
+
+  /** Only axes with a home switch can find their angle again without a person. */
+  #canRehome(): boolean {
+    return this.#bench.positioner.axes.every((axis) => axis.homing === 'switch');
+  }
+
+  #store(sample: SampleRecord): Promise<void> {
+    const { run } = this.#open();
+    this.#sequence = sample.sequence;
+    const stored = this.#archive.addSample(run.number, sample);
+    this.#pending = stored;
+    // Awaited before the next sweep; until then a failure must not count as unhandled.
+    stored.catch(() => {});
+    return stored;
+  }
+
+  #keep(sample: SampleRecord, done: number, leftMs: number): void {
+    const steps = this.#order.steps.length;
+    this.#pending = this.#store(sample).then(() =>
+      this.#tell({ kind: 'sample', sample, done, steps, leftMs }),
+    );
+    this.#pending.catch(() => {});
+  }
+
+  #durable(): Promise<void> {
+    return this.#clock.whileReal(this.#pending);
+  }
+
+  async #end(run: RunRef, error: unknown, unconfirmed: unknown[]): Promise<RunOutcome> {
+    // What was taken is safe before the run is called ended.
+    await this.#durable().catch(() => {});
+    for (const trouble of unconfirmed) {
+      await this.#note('trouble', `not confirmed at the end: ${messageOf(trouble)}`, {});
+      this.#tell({ kind: 'trouble', text: `not confirmed at the end: ${messageOf(trouble)}` });
+    }
+    const state = error === undefined ? 'complete' : stateAfter(error);
+    const reason = error === undefined ? undefined : messageOf(error);
+    await this.#clock.whileReal(this.#archive.endRun(run.number, state, this.#clock.wallMs(), reason));
+    this.#tell({ kind: 'ended', run, state, ...(reason === undefined ? {} : { reason }) });
+    return { run, state, unconfirmed, ...(error === undefined ? {} : { error }) };
+  }
+
+  #note(kind: string, text: string, facts: Readonly<Record<string, unknown>>): Promise<void> {
+    const { run } = this.#open();
+    return this.#clock.whileReal(
+      this.#archive.addEvent(run.number, {
+        segment: this.#segment,
+        wallMs: this.#clock.wallMs(),
+        monotonicMs: this.#clock.monotonicMs(),
+        kind,
+        text,
+        facts,
+      }),
+    );
+  }
+
+  #open(): { run: RunRef; connected: Connected } {
+    if (!this.#run || !this.#connected) throw new DaemonError('DEFECT', 'the run has not been created yet');
+    return { run: this.#run, connected: this.#connected };
+  }
+
+  #tell(event: RunEvent): void {
+    this.#events.next(event);
+  }
+}
+
+/** A stop asked for is an interruption, whatever error it surfaced as. */
+function causeOf(error: unknown, signal: AbortSignal): unknown {
+  if (signal.aborted) {
+    return new DaemonError('RUN_INTERRUPTED', 'stopped on request', {}, error);
+  }
+  return error instanceof StepFailure ? error.cause : error;
+}
+
+/** Trouble with the world can be resumed; a defect or a damaged archive cannot. */
+function stateAfter(error: unknown): 'interrupted' | 'failed' {
+  const resumable =
+    isDriverError(error) ||
+    (error instanceof DaemonError && (error.code === 'RUN_INTERRUPTED' || error.code === 'RUN_GAVE_UP'));
+  return resumable ? 'interrupted' : 'failed';
+}
+
+function messageOf(error: unknown): string {
+  return error instanceof Error ? error.message : String(error);
+}
+
+function factsText(message: string, facts: Readonly<Record<string, unknown>>): string {
+  const bytes = facts['bytesHex'];
+  return typeof bytes === 'string' ? `${message} [${bytes}]` : message;
+}

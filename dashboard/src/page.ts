@@ -1,0 +1,3 @@
+import { h, render } from 'preact';
+
+render(h('p', {}, 'Nightcut'), document.getElementById('page')!);

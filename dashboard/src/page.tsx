@@ -1,3 +1,0 @@
-import { render } from 'preact';
-
-render(<p>Nightcut</p>, document.getElementById('page')!);
