@@ -1,0 +1,26 @@
+// The JSON Schemas of both written files, for editors that underline slips while one types. They hold the
+// shape alone; checks between fields need the loaders. Kept in schema/ and compared by a gate test.
+import { z } from 'zod';
+import { planSchema } from './plan-schema.ts';
+import { rangeSchema } from './range-schema.ts';
+
+/** Text of each schema file by its name in daemon/files/schema/. */
+export function schemaFiles(): Record<string, string> {
+  return {
+    'range.schema.json': schemaText(rangeSchema),
+    'plan.schema.json': schemaText(planSchema),
+  };
+}
+
+function schemaText(schema: z.ZodType): string {
+  const json = z.toJSONSchema(schema, {
+    io: 'input',
+    // The loaders read text, an editor reads numbers: its defaults are numbers too.
+    override: ({ jsonSchema }) => {
+      if (jsonSchema.type === 'integer' && jsonSchema.default !== undefined) {
+        jsonSchema.default = Number(jsonSchema.default);
+      }
+    },
+  });
+  return `${JSON.stringify(json, undefined, 2)}\n`;
+}

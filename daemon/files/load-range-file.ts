@@ -1,0 +1,119 @@
+// range.yaml to a RangeFile: read, checked field by field and between fields. Opens no device; whether
+// the things described answer is the bench's business.
+import { dirname, resolve } from 'node:path';
+import { checkText, type Finding } from './check-tree.ts';
+import type { RangeAxis, RangeFile, ReferenceAntenna } from './range-file.ts';
+import { type RangeText, rangeSchema } from './range-schema.ts';
+import { readText } from './read-text.ts';
+
+/** Throws FILE_UNREADABLE or FILE_INVALID. `path` as the operator wrote it: messages show it so. */
+export async function loadRangeFile(path: string): Promise<RangeFile> {
+  return parseRangeFile(await readText(path, 'name the range file with --range PATH'), path);
+}
+
+/** The same without reading; `path` serves messages and relative paths. Throws FILE_INVALID. */
+export function parseRangeFile(text: string, path: string): RangeFile {
+  const written = checkText(text, path, rangeSchema, checkRange);
+  const { heights, analyzer, positioner, antennas } = written;
+  const absolute = resolve(path);
+  return {
+    path: absolute,
+    text,
+    name: written.range,
+    rangeLengthM: written.rangeLength,
+    ...(heights ? { heights: { rangeAntennaM: heights.rangeAntenna, autM: heights.aut } } : {}),
+    analyzer: { ...analyzer, autPort: analyzer.autPort === 1 ? 1 : 2 },
+    positioner: { link: positioner.link, family: positioner.family, axes: axesOf(written) },
+    rangeAntenna: antennas.rangeAntenna,
+    ...(antennas.reference ? { reference: referenceOf(antennas.reference) } : {}),
+    archive: resolve(dirname(absolute), written.archive),
+  };
+}
+
+function axesOf(written: RangeText): RangeAxis[] {
+  return Object.entries(written.positioner.axes).map(([name, axis]) => ({
+    name,
+    word: axis.word,
+    unitsPerDegree: axis.unitsPerDegree,
+    travelMinDeg: axis.travel.min,
+    travelMaxDeg: axis.travel.max,
+    rateDegPerS: axis.rate,
+    accelerationDegPerS2: axis.acceleration,
+    approachFrom: axis.approach.from,
+    approachDeg: axis.approach.by,
+    settleMs: axis.settle,
+    toleranceDeg: axis.tolerance,
+    homing: axis.homing,
+    sense: axis.sense,
+    boresightDeg: axis.boresight,
+  }));
+}
+
+function referenceOf(written: NonNullable<RangeText['antennas']['reference']>): ReferenceAntenna {
+  const { stated, uncertainty, table } = written.gain;
+  return {
+    name: written.name,
+    stated,
+    table: table.map(({ at, gain }) => ({ frequencyHz: at, gainDbi: gain })),
+    ...(uncertainty === undefined ? {} : { uncertaintyDb: uncertainty }),
+  };
+}
+
+function checkRange(written: RangeText): Finding[] {
+  const { analyzer, positioner, antennas } = written;
+  const findings: Finding[] = [];
+  const axes = Object.entries(positioner.axes);
+  if (axes.length === 0) {
+    findings.push({ path: ['positioner', 'axes'], expectation: 'at least one axis, such as azimuth' });
+  }
+  if (analyzer.link.host === positioner.link.host && analyzer.link.port === positioner.link.port) {
+    findings.push({ path: ['positioner', 'link'], expectation: 'another address than analyzer.link' });
+  }
+  const owners = new Map<string, string>();
+  for (const [name, axis] of axes) {
+    findings.push(...checkAxis(['positioner', 'axes', name], axis));
+    const owner = owners.get(axis.word);
+    if (owner === undefined) owners.set(axis.word, name);
+    else {
+      const path = ['positioner', 'axes', name, 'word'];
+      findings.push({ path, expectation: `another letter than that of axis ${owner}` });
+    }
+  }
+  return [...findings, ...checkTable(antennas.reference?.gain.table ?? [])];
+}
+
+type AxisText = RangeText['positioner']['axes'][string];
+
+/** Travel, and boresight with its approach inside it: every run goes to boresight. */
+function checkAxis(path: string[], axis: AxisText): Finding[] {
+  const { min, max } = axis.travel;
+  const findings: Finding[] = [];
+  if (axis.unitsPerDegree === 0) {
+    findings.push({ path: [...path, 'unitsPerDegree'], expectation: 'a number other than 0' });
+  }
+  if (min >= max) {
+    return [
+      ...findings,
+      { path: [...path, 'travel', 'max'], expectation: `an angle above travel.min, ${min} deg` },
+    ];
+  }
+  if (axis.boresight < min || axis.boresight > max) {
+    const expectation = `an angle within travel, ${min} deg to ${max} deg`;
+    return [...findings, { path: [...path, 'boresight'], expectation }];
+  }
+  const room = axis.approach.from === 'below' ? axis.boresight - min : max - axis.boresight;
+  if (axis.approach.by > room) {
+    const expectation = `at most the ${room} deg of travel ${axis.approach.from} boresight`;
+    findings.push({ path: [...path, 'approach', 'by'], expectation });
+  }
+  return findings;
+}
+
+function checkTable(table: readonly { at: number }[]): Finding[] {
+  return table.flatMap((row, i) => {
+    const before = table[i - 1];
+    if (before === undefined || row.at > before.at) return [];
+    const path = ['antennas', 'reference', 'gain', 'table', i, 'at'];
+    return [{ path, expectation: 'frequencies in ascending order, none twice' }];
+  });
+}
