@@ -2,7 +2,7 @@
 // calls are those of the store, numbered and sent over; a write's promise resolves when the other side has
 // committed. When that thread dies, everything asked of it fails, and so does everything asked later.
 import { randomUUID } from 'node:crypto';
-import { Worker } from 'node:worker_threads';
+import type { Worker } from 'node:worker_threads';
 import { DaemonError } from '../errors.ts';
 import type {
   Archive,
@@ -17,8 +17,6 @@ import type {
   SegmentRecord,
   SetupRecord,
 } from './archive.ts';
-import type { WorkerStart } from './archive-worker.ts';
-import type { ArchiveOptions } from './in-thread-archive.ts';
 import {
   type ArchiveAnswer,
   type ArchiveRequest,
@@ -32,31 +30,6 @@ import {
 interface Waiter {
   resolve(result: unknown): void;
   reject(error: DaemonError): void;
-}
-
-/**
- * Opens or makes the archive at `path`, on a worker thread. Throws ARCHIVE_UNUSABLE, ARCHIVE_NEWER,
- * ARCHIVE_DAMAGED. Reading while another process writes the same file works.
- */
-export async function openArchive(path: string, options: ArchiveOptions = {}): Promise<Archive> {
-  const { newUuid, ...databaseOptions } = options;
-  const archive = new WorkerArchive(startWorker({ path, options: databaseOptions }), newUuid);
-  await archive.opened;
-  return archive;
-}
-
-/**
- * As built the worker needs nothing; as a source file it needs the loader that this module came through.
- * Node 20 registers that loader in the main thread alone, so the worker does so itself before its entry.
- */
-function startWorker(start: WorkerStart): Worker {
-  const asSource = import.meta.url.endsWith('.ts');
-  const file = new URL(asSource ? './archive-worker.ts' : './archive-worker.js', import.meta.url);
-  if (!asSource) return new Worker(file, { workerData: start });
-  const loader = import.meta.resolve('tsx/esm/api');
-  const program = `import { register } from ${JSON.stringify(loader)}; register();`;
-  const execArgv = ['--import', `data:text/javascript,${encodeURIComponent(program)}`];
-  return new Worker(file, { workerData: start, execArgv });
 }
 
 export class WorkerArchive implements Archive {
