@@ -1,5 +1,5 @@
 // The kinds of value that range files and plans are made of, as zod schemas over written text. A schema's
-// message is only what was expected; the place, what was found and the wording are problems.ts's business.
+// message is only what was expected; the place, what was found and the wording are file-problems.ts's business.
 // Advice on a known slip travels in the params.
 import { z } from 'zod';
 import {

@@ -1,4 +1,4 @@
-// The shape of a plan field by field; what fields demand of each other is in load-plan.ts.
+// The shape of a plan field by field; what fields demand of each other is in parse-plan.ts.
 import { z } from 'zod';
 import { axisName, choice, keys, type Limits, list, name, quantity, refuse, wholeNumber } from './fields.ts';
 

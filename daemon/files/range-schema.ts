@@ -1,4 +1,4 @@
-// The shape of a range file field by field; what fields demand of each other is in load-range-file.ts.
+// The shape of a range file field by field; what fields demand of each other is in parse-range-file.ts.
 import { z } from 'zod';
 import {
   axisName,

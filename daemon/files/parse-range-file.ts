@@ -1,17 +1,11 @@
-// range.yaml to a RangeFile: read, checked field by field and between fields. Opens no device; whether
+// The text of a range file to a RangeFile, checked field by field and between fields. Opens no device; whether
 // the things described answer is the bench's business.
 import { dirname, resolve } from 'node:path';
 import { checkText, type Finding } from './check-tree.ts';
 import type { RangeAxis, RangeFile, ReferenceAntenna } from './range-file.ts';
 import { type RangeText, rangeSchema } from './range-schema.ts';
-import { readText } from './read-text.ts';
 
-/** Throws FILE_UNREADABLE or FILE_INVALID. `path` as the operator wrote it: messages show it so. */
-export async function loadRangeFile(path: string): Promise<RangeFile> {
-  return parseRangeFile(await readText(path, 'name the range file with --range PATH'), path);
-}
-
-/** The same without reading; `path` serves messages and relative paths. Throws FILE_INVALID. */
+/** `path` as the operator wrote it, for messages and relative paths. Throws FILE_INVALID. */
 export function parseRangeFile(text: string, path: string): RangeFile {
   const written = checkText(text, path, rangeSchema, checkRange);
   const { heights, analyzer, positioner, antennas } = written;

@@ -1,17 +1,11 @@
-// A plan file to a Plan: read, checked field by field and between fields. Whether the range can do it
+// The text of a plan file to a Plan, checked field by field and between fields. Whether the range can do it
 // (axes, travel) is plan/expand.ts's business.
 import { resolve } from 'node:path';
 import { checkText, type Finding } from './check-tree.ts';
 import type { Plan, PlanCut } from './plan-file.ts';
 import { mostSteps, type PlanText, planSchema } from './plan-schema.ts';
-import { readText } from './read-text.ts';
 
-/** Throws FILE_UNREADABLE or FILE_INVALID. `path` as the operator wrote it: messages show it so. */
-export async function loadPlan(path: string): Promise<Plan> {
-  return parsePlan(await readText(path, 'name an existing plan'), path);
-}
-
-/** The same without reading; `path` serves messages. Throws FILE_INVALID. */
+/** `path` as the operator wrote it, for messages. Throws FILE_INVALID. */
 export function parsePlan(text: string, path: string): Plan {
   const written = checkText(text, path, planSchema, checkPlan);
   const { band, analyzer, kind } = written;
