@@ -1,0 +1,367 @@
+// One line, one answer, over a link; urgent single bytes overtake whatever waits. Everything the controller
+// says unasked is an event. Knows nothing of axes. After an answer that never came, or came with an alarm,
+// the two sides are out of step: the next line first makes them agree again.
+import { type Observable, Subject, type Subscription } from 'rxjs';
+import type { Clock } from '../clock.ts';
+import { DriverError } from '../errors.ts';
+import { LineSplitter } from '../link/lines.ts';
+import type { Link, LinkClosed } from '../link/link.ts';
+import { alarmMeaning, refusalMeaning } from './gcode-meanings.ts';
+import { type ControllerLine, readLine, type StatusReport } from './gcode-reports.ts';
+
+/** Bytes that the controller takes out of the stream at once, without an acknowledgement. */
+export const urgentBytes = {
+  report: 0x3f,
+  hold: 0x21,
+  softReset: 0x18,
+  feedOverride100: 0x90,
+  rapidOverride100: 0x95,
+} as const;
+
+export type SenderEvent =
+  | { kind: 'report'; report: StatusReport; monotonicMs: number }
+  | { kind: 'alarm'; number: number }
+  /** `asked`: the banner answers our own reset. */
+  | { kind: 'restart'; banner: string; asked: boolean }
+  | { kind: 'closed'; news: LinkClosed }
+  /** Any other line that no exchange was waiting for, late answers included. */
+  | { kind: 'stray'; line: ControllerLine };
+
+/** Called for every line and urgent byte, for a log of the wire. */
+export type OnTraffic = (direction: 'sent' | 'received', text: string, monotonicMs: number) => void;
+
+export interface LineOptions {
+  withinMs: number;
+  signal?: AbortSignal | undefined;
+}
+
+interface Exchange {
+  text: string;
+  /** Lines that came before the answer: settings, identity and the like. */
+  lines: ControllerLine[];
+  /** Answers that close the exchange with `true`; undefined for the plain rule of one answer. */
+  done: ((line: ControllerLine) => boolean) | undefined;
+  resolve: (lines: ControllerLine[]) => void;
+  reject: (why: unknown) => void;
+}
+
+const resyncRounds = 3;
+const resyncWithinMs = 1_500;
+const resyncPauseMs = 250;
+const reportTries = 3;
+const reportWithinMs = 1_000;
+
+export class GcodeSender {
+  readonly #link: Link;
+  readonly #clock: Clock;
+  readonly #onTraffic: OnTraffic | undefined;
+  readonly #splitter = new LineSplitter();
+  readonly #events = new Subject<SenderEvent>();
+  readonly #subscriptions: Subscription[];
+  #exchange: Exchange | undefined;
+  #queue: Promise<unknown> = Promise.resolve();
+  #outOfStep = true;
+  #resetAsked = false;
+
+  constructor(link: Link, clock: Clock, onTraffic?: OnTraffic) {
+    this.#link = link;
+    this.#clock = clock;
+    this.#onTraffic = onTraffic;
+    this.#subscriptions = [
+      link.received$.subscribe((bytes) => {
+        for (const text of this.#splitter.push(bytes)) this.#receive(text);
+      }),
+      link.closed$.subscribe((news) => this.#closed(news)),
+    ];
+  }
+
+  get events$(): Observable<SenderEvent> {
+    return this.#events;
+  }
+
+  /** Stops listening to the link, which stays as it is. */
+  dispose(): void {
+    for (const subscription of this.#subscriptions) subscription.unsubscribe();
+  }
+
+  /**
+   * Sends one line when those before it are answered; resolves on `ok` with the lines received meanwhile.
+   * Throws POSITIONER_COMMAND_REFUSED, POSITIONER_ALARM, POSITIONER_RESTARTED, LINK_CLOSED,
+   * POSITIONER_NOT_ANSWERING after `withinMs`, or the signal's reason.
+   */
+  line(text: string, options: LineOptions): Promise<ControllerLine[]> {
+    const turn = this.#queue.then(async () => {
+      options.signal?.throwIfAborted();
+      if (this.#outOfStep) await this.#resync(options.signal);
+      return this.#ask(text, `${text}\n`, options);
+    });
+    // The caller has the failure; the queue only keeps the order.
+    this.#queue = turn.catch(() => {});
+    return turn;
+  }
+
+  /** Makes both sides agree on what is answered; returns what the controller said, its parser state included. */
+  resync(signal?: AbortSignal): Promise<ControllerLine[]> {
+    const turn = this.#queue.then(() => this.#resync(signal));
+    this.#queue = turn.catch(() => {});
+    return turn;
+  }
+
+  /** Sends bytes at once, in the caller's turn. A closed link shows as an event, not here. */
+  urgent(...bytes: number[]): void {
+    for (const byte of bytes)
+      this.#note('sent', byte > 0x20 && byte < 0x7f ? String.fromCharCode(byte) : `0x${byte.toString(16)}`);
+    this.#write(Uint8Array.from(bytes));
+  }
+
+  /** An empty line whose answer nobody waits for: ends half a line and wakes a sleepy bridge. */
+  nudge(text = ''): void {
+    this.#outOfStep = true;
+    this.#note('sent', text);
+    this.#write(new TextEncoder().encode(`${text}\n`));
+  }
+
+  /** Asks once for a report; undefined when none came in time. */
+  async askReport(
+    withinMs = reportWithinMs,
+    signal?: AbortSignal,
+  ): Promise<{ report: StatusReport; monotonicMs: number } | undefined> {
+    signal?.throwIfAborted();
+    const answer = this.next((event) => (event.kind === 'report' ? event : undefined), withinMs, signal);
+    this.urgent(urgentBytes.report);
+    return answer;
+  }
+
+  /** A report asked for now. Three questions without an answer: POSITIONER_NOT_ANSWERING. */
+  async report(signal?: AbortSignal): Promise<{ report: StatusReport; monotonicMs: number }> {
+    this.#checkOpen();
+    for (let tried = 0; tried < reportTries; tried += 1) {
+      const answer = await this.askReport(reportWithinMs, signal);
+      if (answer) return answer;
+      this.#checkOpen();
+    }
+    throw this.#notAnswering('?', reportTries * reportWithinMs);
+  }
+
+  /** Soft reset; resolves with the banner. Throws POSITIONER_NOT_ANSWERING when none comes in time. */
+  async reset(withinMs: number, signal?: AbortSignal): Promise<string> {
+    this.#resetAsked = true;
+    try {
+      const banner = this.next((event) => (event.kind === 'restart' ? event : undefined), withinMs, signal);
+      this.urgent(urgentBytes.softReset);
+      const seen = await banner;
+      if (!seen) throw this.#notAnswering('soft reset', withinMs);
+      return seen.banner;
+    } finally {
+      this.#resetAsked = false;
+    }
+  }
+
+  /** The first event that `pick` makes something of; undefined when there was none in time. */
+  next<T>(
+    pick: (event: SenderEvent) => T | undefined,
+    withinMs: number,
+    signal?: AbortSignal,
+  ): Promise<T | undefined> {
+    return new Promise((resolve, reject) => {
+      if (signal?.aborted) return reject(signal.reason);
+      const finish = (act: () => void): void => {
+        cancel();
+        subscription.unsubscribe();
+        signal?.removeEventListener('abort', onAbort);
+        act();
+      };
+      const onAbort = (): void => finish(() => reject(signal?.reason));
+      const cancel = this.#clock.at(this.#clock.monotonicMs() + withinMs, () =>
+        finish(() => resolve(undefined)),
+      );
+      const subscription = this.#events.subscribe((event) => {
+        const picked = pick(event);
+        if (picked !== undefined) finish(() => resolve(picked));
+        else if (event.kind === 'closed') finish(() => reject(this.#linkClosed(event.news)));
+      });
+      signal?.addEventListener('abort', onAbort, { once: true });
+    });
+  }
+
+  /**
+   * A `#` spoils half a line that may be left in the controller, so that it is refused instead of run in part.
+   * Then the parser state is asked for: the first answer behind its text is its own, whatever was owed before.
+   * A controller that does not print it is in step after both answers and a pause.
+   */
+  async #resync(signal: AbortSignal | undefined): Promise<ControllerLine[]> {
+    for (let round = 0; ; round += 1) {
+      let stateSeen = false;
+      let answers = 0;
+      let cancelQuiet = (): void => {};
+      const done = (line: ControllerLine): boolean => {
+        cancelQuiet();
+        if (line.kind === 'data' && line.key === 'GC') stateSeen = true;
+        if (line.kind !== 'ok' && line.kind !== 'error') return false;
+        answers += 1;
+        if (!stateSeen && answers >= 2) {
+          cancelQuiet = this.#clock.at(this.#clock.monotonicMs() + resyncPauseMs, () => this.#finish());
+        }
+        return stateSeen;
+      };
+      try {
+        const lines = await this.#ask('resync', '#\n$G\n', { withinMs: resyncWithinMs, signal }, done);
+        // Answers to the rounds before may still be on their way; with no exchange open they count for nothing.
+        if (round > 0) await this.#clock.sleep(resyncPauseMs, signal);
+        this.#outOfStep = false;
+        return lines;
+      } catch (error) {
+        const retry = error instanceof DriverError && error.code === 'POSITIONER_NOT_ANSWERING';
+        if (!retry || round + 1 >= resyncRounds) throw error;
+      } finally {
+        cancelQuiet();
+      }
+    }
+  }
+
+  #ask(
+    text: string,
+    wire: string,
+    { withinMs, signal }: LineOptions,
+    done?: (line: ControllerLine) => boolean,
+  ): Promise<ControllerLine[]> {
+    return new Promise((resolve, reject) => {
+      signal?.throwIfAborted();
+      this.#checkOpen();
+      const settle = (): void => {
+        this.#exchange = undefined;
+        cancel();
+        signal?.removeEventListener('abort', onAbort);
+      };
+      const exchange: Exchange = {
+        text,
+        lines: [],
+        done,
+        resolve: (lines) => {
+          settle();
+          resolve(lines);
+        },
+        reject: (why) => {
+          settle();
+          this.#outOfStep = true;
+          reject(why);
+        },
+      };
+      const onAbort = (): void => exchange.reject(signal?.reason);
+      const cancel = this.#clock.at(this.#clock.monotonicMs() + withinMs, () =>
+        exchange.reject(this.#notAnswering(text, withinMs)),
+      );
+      signal?.addEventListener('abort', onAbort, { once: true });
+      this.#exchange = exchange;
+      this.#note('sent', wire.trimEnd());
+      this.#write(new TextEncoder().encode(wire));
+    });
+  }
+
+  #receive(text: string): void {
+    this.#note('received', text);
+    const line = readLine(text);
+    if (line.kind === 'report') {
+      this.#events.next({ ...line, monotonicMs: this.#clock.monotonicMs() });
+    } else if (line.kind === 'banner') {
+      this.#restarted(line.text);
+    } else if (line.kind === 'alarm') {
+      this.#alarmed(line.number);
+    } else {
+      this.#answered(line);
+    }
+  }
+
+  #answered(line: ControllerLine): void {
+    const exchange = this.#exchange;
+    if (!exchange) {
+      this.#events.next({ kind: 'stray', line });
+      return;
+    }
+    exchange.lines.push(line);
+    if (exchange.done) {
+      if (exchange.done(line)) this.#finish();
+    } else if (line.kind === 'ok') {
+      this.#finish();
+    } else if (line.kind === 'error') {
+      // Some firmwares go on refusing until they are asked something else: being out of step sees to that.
+      exchange.reject(
+        new DriverError(
+          'POSITIONER_COMMAND_REFUSED',
+          `${this.#link.name} refused ${exchange.text}: ${refusalMeaning(line.number)}`,
+          { line: exchange.text, error: line.number, meaning: refusalMeaning(line.number) },
+        ),
+      );
+    }
+  }
+
+  #finish(): void {
+    this.#exchange?.resolve(this.#exchange.lines);
+  }
+
+  #alarmed(number: number): void {
+    this.#outOfStep = true;
+    this.#events.next({ kind: 'alarm', number });
+    // The `ok` that may still follow is none: the exchange ends here.
+    this.#exchange?.reject(alarmError(number, this.#link.name));
+  }
+
+  #restarted(banner: string): void {
+    const asked = this.#resetAsked;
+    this.#resetAsked = false;
+    this.#outOfStep = true;
+    this.#events.next({ kind: 'restart', banner, asked });
+    this.#exchange?.reject(
+      new DriverError('POSITIONER_RESTARTED', `${this.#link.name} restarted`, {
+        line: this.#exchange.text,
+        banner,
+      }),
+    );
+  }
+
+  #closed(news: LinkClosed): void {
+    this.#splitter.clear();
+    this.#outOfStep = true;
+    this.#exchange?.reject(this.#linkClosed(news));
+    this.#events.next({ kind: 'closed', news });
+  }
+
+  #write(bytes: Uint8Array): void {
+    this.#link.write(bytes).catch((error: unknown) => this.#exchange?.reject(error));
+  }
+
+  #checkOpen(): void {
+    if (!this.#link.isOpen) throw this.#linkClosed();
+  }
+
+  #linkClosed(news?: LinkClosed): DriverError {
+    const facts = { link: this.#link.name, ...(news ? { by: news.by } : {}) };
+    return new DriverError('LINK_CLOSED', `${this.#link.name} is closed`, facts, news?.cause);
+  }
+
+  #notAnswering(line: string, withinMs: number): DriverError {
+    return new DriverError(
+      'POSITIONER_NOT_ANSWERING',
+      `${this.#link.name} did not answer ${line} in ${withinMs} ms`,
+      { line, withinMs },
+    );
+  }
+
+  #note(direction: 'sent' | 'received', text: string): void {
+    this.#onTraffic?.(direction, text, this.#clock.monotonicMs());
+  }
+}
+
+/** POSITIONER_ALARM with what the number means and whether the position survived. */
+export function alarmError(number: number | undefined, link: string): DriverError {
+  if (number === undefined) {
+    return new DriverError('POSITIONER_ALARM', `${link} is locked by an alarm`, { positionKnown: false });
+  }
+  const { meaning, positionKnown, wayOut } = alarmMeaning(number);
+  return new DriverError('POSITIONER_ALARM', `${link}: alarm ${number}, ${meaning}`, {
+    alarm: number,
+    meaning,
+    positionKnown,
+    wayOut,
+  });
+}
