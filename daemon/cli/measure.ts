@@ -31,8 +31,8 @@ export function addMeasureCommand(program: Command, outside: Surroundings, finis
     .option('--archive <path>', 'where runs are kept; the range file names it otherwise')
     .option('--json', 'print the figures as one JSON document')
     .action(async (planPath: string, options: MeasureOptions) => {
-      const range = await loadRangeFile(resolve(outside.folder, options.range));
-      const plan = await loadPlan(resolve(outside.folder, planPath));
+      const range = await loadRangeFile(options.range);
+      const plan = await loadPlan(planPath);
       await measure(range, plan, options, outside, finish);
     });
 }
@@ -45,7 +45,7 @@ async function measure(
   finish: Finish,
 ): Promise<void> {
   const order = orderRun(range, plan);
-  const archivePath = options.archive ? resolve(outside.folder, options.archive) : range.archive;
+  const archivePath = options.archive ? resolve(options.archive) : range.archive;
   const archive = await openArchive(archivePath);
   try {
     const outcome = await executeWatched(range, await order.complete(archive), archive, archivePath, outside);

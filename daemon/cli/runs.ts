@@ -47,8 +47,8 @@ async function onArchive(
   act: (archive: Archive) => Promise<void>,
 ): Promise<void> {
   const path = options.archive
-    ? resolve(outside.folder, options.archive)
-    : (await loadRangeFile(resolve(outside.folder, options.range))).archive;
+    ? resolve(options.archive)
+    : (await loadRangeFile(options.range)).archive;
   // Reading must not create an archive where there is none.
   if (!existsSync(path)) {
     throw new DaemonError('FILE_UNREADABLE', `${path}: there is no archive here`, { path });

@@ -1,4 +1,4 @@
-// What a command touches of the outside: time, terminal, folder, signals. Handed in, so that commands run
+// What a command touches of the outside: time, terminal, signals. Handed in, so that commands run
 // in tests without a process of their own.
 import type { Clock } from '../../drivers/clock.ts';
 import type { ExitCode } from '../errors.ts';
@@ -15,8 +15,6 @@ export interface Surroundings {
   stdout: TextSink;
   /** Progress, warnings, errors. */
   stderr: TextSink;
-  /** Relative paths start here. */
-  folder: string;
   /** Calls `stop` when the operator or the system asks to stop; returns how to take that back. */
   onStopSignal: (stop: () => void) => () => void;
 }

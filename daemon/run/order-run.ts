@@ -1,0 +1,54 @@
+// Range file and plan → the order a run executes. What the files alone can tell is checked first, so that
+// a wrong plan is refused before an archive is opened or a device spoken to; the gain reference comes next.
+import type { Archive } from '../archive/archive.ts';
+import { DaemonError } from '../errors.ts';
+import type { Plan } from '../files/plan-file.ts';
+import type { RangeFile } from '../files/range-file.ts';
+import { predictStepsMs } from '../plan/duration.ts';
+import { expandPlan } from '../plan/expand.ts';
+import { findGainReference } from '../results/gain-reference.ts';
+import type { RunOrder } from './run-loop.ts';
+
+export interface OrderDraft {
+  /** Looks up the gain reference. Throws REFERENCE_MISSING, REFERENCE_DOES_NOT_FIT. */
+  complete(archive: Archive): Promise<RunOrder>;
+}
+
+/** Throws PLAN_OUTSIDE_TRAVEL, PLAN_AXIS_UNKNOWN; REFERENCE_MISSING when the range has no reference antenna. */
+export function orderRun(range: RangeFile, plan: Plan): OrderDraft {
+  const { steps } = expandPlan(plan, range);
+  if (plan.kind === 'reference' && !range.reference) {
+    throw new DaemonError(
+      'REFERENCE_MISSING',
+      `${range.path} names no reference antenna; a plan of kind reference needs antennas.reference with its gain table`,
+      { range: range.name },
+    );
+  }
+  const { axes } = range.positioner;
+  return {
+    async complete(archive) {
+      const gainReference = await findGainReference(archive, plan, range);
+      return {
+        record: {
+          kind: plan.kind,
+          antenna: plan.antenna,
+          range: range.name,
+          planText: plan.text,
+          plan,
+          rangeText: range.text,
+          rangeFile: range,
+          ...(gainReference ? { gainReference } : {}),
+        },
+        sweep: {
+          ...plan.band,
+          ...plan.analyzer,
+          parameters: range.analyzer.autPort === 1 ? ['S21', 'S11'] : ['S21', 'S22'],
+        },
+        steps,
+        motionMs: predictStepsMs(steps, axes, 0),
+        boresight: Object.fromEntries(axes.map((axis) => [axis.name, axis.boresightDeg])),
+        autPort: range.analyzer.autPort,
+      };
+    },
+  };
+}
