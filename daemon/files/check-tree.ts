@@ -1,7 +1,7 @@
 // A YAML tree through a zod schema and then through the checks between fields, with every refusal turned
 // into a problem with its line. Used by both loaders; knows neither file.
 import { z } from 'zod';
-import { type FilePath, type FileProblem, fileInvalid, shown } from './file-problems.ts';
+import { type FilePath, type FileProblem, fileInvalid, pathText, shown } from './file-problems.ts';
 import { nearestWord } from './nearest-word.ts';
 import { parseYaml, type YamlTree } from './yaml-tree.ts';
 
@@ -26,14 +26,28 @@ export function checkText<Schema extends z.ZodType>(
   const tree = parseYaml(text, file);
   const outcome = schema.safeParse(tree.value);
   if (!outcome.success) {
-    throw fileInvalid(
-      file,
-      outcome.error.issues.flatMap((issue) => issueProblems(issue, tree, schema)),
-    );
+    throw fileInvalid(file, schemaProblems(outcome.error.issues, tree, schema));
   }
   const problems = checkBetween(outcome.data).map((finding) => findingProblem(finding, tree));
   if (problems.length > 0) throw fileInvalid(file, problems);
   return outcome.data;
+}
+
+/** A mistyped key is also a missing one: told once, as mistyped. */
+function schemaProblems(issues: z.core.$ZodIssue[], tree: YamlTree, schema: z.core.$ZodType): FileProblem[] {
+  const meant = new Set<string>();
+  const unknown = issues.flatMap((issue) =>
+    issue.code === 'unrecognized_keys' ? unknownKeys(issue.keys, pathOf(issue), tree, schema, meant) : [],
+  );
+  const others = issues
+    .filter((issue) => issue.code !== 'unrecognized_keys')
+    .filter((issue) => !meant.has(pathText(pathOf(issue))) || tree.found(pathOf(issue)) !== 'nothing')
+    .map((issue) => issueProblem(issue, tree));
+  return [...unknown, ...others];
+}
+
+function pathOf(issue: z.core.$ZodIssue): FilePath {
+  return issue.path.map((part) => (typeof part === 'number' ? part : String(part)));
 }
 
 function findingProblem(finding: Finding, tree: YamlTree): FileProblem {
@@ -43,29 +57,31 @@ function findingProblem(finding: Finding, tree: YamlTree): FileProblem {
   return { line: tree.lineOf(path), path, text };
 }
 
-function issueProblems(issue: z.core.$ZodIssue, tree: YamlTree, schema: z.core.$ZodType): FileProblem[] {
-  const path = issue.path.map((part) => (typeof part === 'number' ? part : String(part)));
-  if (issue.code === 'unrecognized_keys') return unknownKeys(issue.keys, path, tree, schema);
+function issueProblem(issue: z.core.$ZodIssue, tree: YamlTree): FileProblem {
+  const path = pathOf(issue);
   if (issue.code === 'invalid_key') {
     const expected = issue.issues[0]?.message ?? 'another key';
-    return [{ line: tree.lineOf(path, 'key'), path, text: `expected ${expected}` }];
+    return { line: tree.lineOf(path, 'key'), path, text: `expected ${expected}` };
   }
   const advice = issue.code === 'custom' ? issue.params?.['advice'] : undefined;
   const finding: Finding = { path, expectation: issue.message };
   if (typeof advice === 'string') finding.advice = advice;
-  return [findingProblem(finding, tree)];
+  return findingProblem(finding, tree);
 }
 
+/** Adds the paths of the keys that were probably meant to `meant`. */
 function unknownKeys(
   written: readonly string[],
   path: FilePath,
   tree: YamlTree,
   schema: z.core.$ZodType,
+  meant: Set<string>,
 ): FileProblem[] {
   const known = knownKeys(schema, path);
   return written.map((key, i) => {
     if (i >= unknownKeysTold) return { line: tree.lineOf(path, 'key'), path, text: 'one more unknown key' };
     const near = nearestWord(key, known);
+    if (near !== undefined) meant.add(pathText([...path, near]));
     const hint = near === undefined ? `known here: ${known.join(', ')}` : `did you mean \`${near}\`?`;
     const line = tree.lineOf([...path, key], 'key');
     return { line, path, text: `unknown key \`${shown(key, 40)}\`; ${hint}` };

@@ -14,7 +14,7 @@ export function parseLink(text: string): ParsedLink {
   if (/^serial:/i.test(text)) {
     return refused('serial lines are not yet offered: reach the port through a TCP serial bridge');
   }
-  const match = /^tcp:\/\/(?:\[([^\]]*)\]|([^:/[\]]*))(?::(.*))?$/.exec(text);
+  const match = /^tcp:\/\/(?:\[([^\]]*)\]|([^:/[\]]*))(?::([^:]*))?$/.exec(text);
   if (!match) {
     const tooManyColons = /^tcp:\/\/[0-9A-Fa-f:]+$/.test(text);
     return refused(tooManyColons ? 'an IPv6 address stands in brackets: tcp://[::1]:5025' : undefined);

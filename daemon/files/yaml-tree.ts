@@ -35,7 +35,9 @@ export function parseYaml(text: string, file: string): YamlTree {
   if (unfit) throw fileInvalid(file, [unfit]);
   const lines = new LineCounter();
   const doc = parsed(text, file, lines);
-  const lineAt = (offset: number): number => Math.max(1, lines.linePos(offset).line);
+  // What is missing at the end is missing in the last line that holds anything.
+  const end = Math.max(0, text.trimEnd().length - 1);
+  const lineAt = (offset: number): number => Math.max(1, lines.linePos(Math.min(offset, end)).line);
   const slips = [...doc.errors, ...doc.warnings].map((slip) => ({
     line: lineAt(slip.pos[0]),
     path: [],
