@@ -1,0 +1,184 @@
+// One acquisition: averaging cleared, as many sweeps started as an average needs, their end awaited by
+// polling, the traces read, and the grid looked at once more, for the front panel may change anything.
+//
+//   ESR read (stale bits) ─► averaging cleared ─► [ INIT, *OPC, poll ESR until bit 0 ] × starts
+//   ─► for each parameter: select, read ─► ESR (a refused select?) ─► axis, or start, stop, points
+//
+// `*OPC?` is never asked: it makes the instrument deaf, and a late "1" would shift all later answers.
+import { DriverError, isDriverError } from '../errors.ts';
+import type { Acquisition, SParameter, SweepSetup, TimeLaw } from './analyzer.ts';
+import type { ScpiConversation } from './scpi-conversation.ts';
+import { confirmAxis, confirmGrid, type InstrumentSweep } from './scpi-setup.ts';
+import { anyErrorBits, eventBits } from './scpi-status.ts';
+
+const firstPollMs = 2;
+const pollGrowth = 1.5;
+const longestPollMs = 100;
+/** Retrace, band switching and settling are often left out of the stated sweep time. */
+const deadlineFactor = 1.5;
+const deadlineSlackMs = 500;
+
+export interface SweepRun {
+  startMonotonicMs: number;
+  stopMonotonicMs: number;
+  timeLaw: TimeLaw;
+}
+
+/** Sweeps, and returns when. Throws ANALYZER_SWEEP_TIMEOUT, ANALYZER_DEVICE_ERROR, ANALYZER_POWER_CYCLED … */
+export async function runSweeps(
+  talk: ScpiConversation,
+  sweep: InstrumentSweep,
+  answerTimeoutMs: number,
+): Promise<SweepRun> {
+  await judgeEvents(talk, await talk.readEvents(), 'between two sweeps', { mayBeStale: true });
+  if (sweep.averages > 1) await talk.tell('averagingClear');
+  const starts = talk.dialect.oneStartRuns === 'whole-average' ? 1 : sweep.averages;
+  const startedMs: number[] = [];
+  for (let start = 0; start < starts; start += 1) {
+    startedMs.push(talk.clock.monotonicMs());
+    await talk.tell('startSweep');
+    await talk.tellPlain('*OPC');
+    await awaitEnd(talk, sweep, startedMs, answerTimeoutMs);
+  }
+  const stopMonotonicMs = talk.clock.monotonicMs();
+  const startMonotonicMs = startedMs[0] ?? stopMonotonicMs;
+  return { startMonotonicMs, stopMonotonicMs, timeLaw: timeLawOf(sweep, startedMs, stopMonotonicMs) };
+}
+
+/**
+ * Polls `*ESR?` until operation complete. The deadline allows one start to run the whole average, which
+ * some instruments do whatever the dialect says; an instrument that is deaf while it sweeps answers the
+ * poll only then, so that the poll may take as long.
+ */
+async function awaitEnd(
+  talk: ScpiConversation,
+  sweep: InstrumentSweep,
+  startedMs: readonly number[],
+  answerTimeoutMs: number,
+): Promise<void> {
+  const begunMs = startedMs.at(-1) ?? talk.clock.monotonicMs();
+  const deadlineMs = begunMs + sweep.acquisitionMs * deadlineFactor + deadlineSlackMs;
+  const pause = pollPauses(talk, begunMs + sweep.sweepMs);
+  for (;;) {
+    await talk.sleep(pause());
+    const leftMs = deadlineMs - talk.clock.monotonicMs();
+    const events = await talk.readEvents(Math.max(answerTimeoutMs, leftMs));
+    await judgeEvents(talk, events, `sweep ${startedMs.length}`);
+    if (events & eventBits.operationComplete) return;
+    if (leftMs <= 0) throw await sweepTimeout(talk, sweep, deadlineMs - begunMs);
+  }
+}
+
+/** Growing pauses, one of which ends just when the sweep should; from there they begin anew, short. */
+function pollPauses(talk: ScpiConversation, expectedEndMs: number): () => number {
+  let growingMs = firstPollMs;
+  return () => {
+    const toEndMs = expectedEndMs - talk.clock.monotonicMs();
+    const pauseMs = toEndMs > 0 ? Math.min(growingMs, toEndMs) : growingMs;
+    growingMs = toEndMs > 0 && pauseMs >= toEndMs ? firstPollMs : growingMs * pollGrowth;
+    growingMs = Math.min(growingMs, longestPollMs);
+    return Math.max(pauseMs, firstPollMs / 2);
+  };
+}
+
+async function sweepTimeout(
+  talk: ScpiConversation,
+  sweep: InstrumentSweep,
+  allowedMs: number,
+): Promise<DriverError> {
+  await talk.tell('abort');
+  const facts = { allowedMs: Math.round(allowedMs), statedMs: sweep.sweepMs, averages: sweep.averages };
+  return new DriverError(
+    'ANALYZER_SWEEP_TIMEOUT',
+    `a sweep stated to take ${Math.round(sweep.sweepMs)} ms had not ended after ${Math.round(allowedMs)} ms; it was aborted`,
+    facts,
+  );
+}
+
+/**
+ * Turns bits of `*ESR?` into the errors they announce. Stale bits, those of errors that were fetched
+ * before, have no entry in the queue any more and are no news.
+ */
+async function judgeEvents(
+  talk: ScpiConversation,
+  events: number,
+  during: string,
+  { mayBeStale = false } = {},
+): Promise<void> {
+  if (events & eventBits.powerOn) {
+    throw new DriverError('ANALYZER_POWER_CYCLED', `${during}: the instrument says that it was switched on`, {
+      events,
+    });
+  }
+  if ((events & anyErrorBits) === 0) return;
+  await talk.throwErrors(during);
+  if (mayBeStale) return;
+  // The queue may have been read by somebody else, or the instrument keeps none.
+  throw new DriverError(
+    'ANALYZER_DEVICE_ERROR',
+    `${during}: the event register reports an error (${events}) that is not in the error queue`,
+    { events },
+  );
+}
+
+/**
+ * When point i was measured on the average: the sweeps of an average are taken as centred on the mean of
+ * their starts, the points as spread evenly over one stated sweep, each in the middle of its own dwell.
+ */
+function timeLawOf(sweep: InstrumentSweep, startedMs: readonly number[], stopMs: number): TimeLaw {
+  const [begunMs = stopMs] = startedMs;
+  const points = sweep.frequenciesHz.length;
+  // Never later than what was observed: stated times may include what takes place elsewhere.
+  const lastSweepMs = stopMs - (startedMs.at(-1) ?? stopMs);
+  const byItself = startedMs.length === 1 ? sweep.averages : 1;
+  const sweepMs = Math.min(sweep.sweepMs, lastSweepMs / byItself);
+  const ownOffsetMs = ((byItself - 1) / 2) * sweepMs;
+  const meanStartMs = startedMs.reduce((sum, ms) => sum + (ms - begunMs), 0) / Math.max(1, startedMs.length);
+  const halfDwellMs = sweepMs / points / 2;
+  const offsetMs = meanStartMs + ownOffsetMs;
+  return { kind: 'linear', firstMs: offsetMs + halfDwellMs, lastMs: offsetMs + sweepMs - halfDwellMs };
+}
+
+/** Selects and reads the wanted parameters, each 2N numbers. */
+export async function readTraces(
+  talk: ScpiConversation,
+  sweep: InstrumentSweep,
+  wanted: readonly SParameter[],
+): Promise<Acquisition['traces']> {
+  const traces = new Map<SParameter, Float64Array>();
+  for (const parameter of wanted) {
+    // Before every read: another session, or a hand at the panel, may have selected something else.
+    await talk.tell('parameterSelect', { trace: sweep.parameters.indexOf(parameter) + 1, parameter });
+    traces.set(parameter, await talk.askNumbers('dataQuery', 2 * sweep.frequenciesHz.length));
+  }
+  // A select that was refused leaves the trace of another parameter in its place.
+  await judgeEvents(talk, await talk.readEvents(), 'reading the traces');
+  return traces;
+}
+
+/**
+ * Whether the instrument still has the grid of `setup`. Throws ANALYZER_SETTING_DIFFERS with the fact
+ * `afterSweep`: the setting was right before.
+ */
+export async function confirmUnchanged(
+  talk: ScpiConversation,
+  setup: SweepSetup,
+  sweep: InstrumentSweep,
+): Promise<void> {
+  try {
+    // In blocks the axis costs little and also shows a changed byte order; in decimals three numbers do.
+    if (talk.has('frequencyAxisQuery') && talk.traceForm.format !== 'ascii') {
+      await confirmAxis(talk, sweep.frequenciesHz);
+    } else {
+      await confirmGrid(talk, setup);
+    }
+  } catch (error) {
+    if (!isDriverError(error, 'ANALYZER_SETTING_DIFFERS')) throw error;
+    throw new DriverError(
+      error.code,
+      `${error.message}; it was changed after it was set`,
+      { ...error.facts, afterSweep: true },
+      error,
+    );
+  }
+}

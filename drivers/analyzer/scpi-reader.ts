@@ -1,0 +1,167 @@
+// Bytes of the instrument to one answer, pure and incremental: the pieces may be cut anywhere. A text ends
+// with a line feed; a definite block `#d…` has its length in front and may hold line feeds as data, so
+// that the two are never read by the same rule. Knows no time and no link.
+//
+//   text   leading white space ─► bytes up to LF, a CR before it dropped
+//   block  leading white space ─► '#' ─► digit d ─► d digits = length ─► that many bytes
+//
+// The line end behind a block is not waited for (some instruments send none): what is left of it is the
+// leading white space of the next answer.
+import { hexOf } from './scpi-values.ts';
+
+/** What the question that was asked is answered with; `maxBytes` bounds what the reader will keep. */
+export type Expected = { kind: 'text'; maxBytes: number } | { kind: 'block'; maxBytes: number };
+
+export type ReaderNews =
+  | { kind: 'more' }
+  | { kind: 'text'; text: string; rest: Uint8Array }
+  | { kind: 'block'; data: Uint8Array; rest: Uint8Array }
+  | {
+      kind: 'unreadable';
+      code: 'ANALYZER_BAD_ANSWER' | 'ANALYZER_BAD_BLOCK';
+      because: string;
+      firstBytesHex: string;
+    };
+
+const lineFeed = 0x0a;
+const carriageReturn = 0x0d;
+const hash = 0x23;
+const more: ReaderNews = { kind: 'more' };
+
+/** Bytes that say nothing between two answers: the rest of a line end, blanks. */
+export function isSilence(byte: number): boolean {
+  return byte === lineFeed || byte === carriageReturn || byte === 0x20 || byte === 0x09;
+}
+
+function digitOf(byte: number): number | undefined {
+  return byte >= 0x30 && byte <= 0x39 ? byte - 0x30 : undefined;
+}
+
+type Stage = 'start' | 'text' | 'digits' | 'length' | 'data' | 'done';
+
+/** Reads one answer; a new reader is made for each question. */
+export class ScpiReader {
+  readonly #expected: Expected;
+  #stage: Stage = 'start';
+  #text = '';
+  /** The answer as it came, its first bytes only: evidence when it cannot be read. */
+  readonly #first: number[] = [];
+  #digitsLeft = 0;
+  #length = 0;
+  #data = new Uint8Array(0);
+  #filled = 0;
+
+  constructor(expected: Expected) {
+    this.#expected = expected;
+  }
+
+  /** Takes the next piece. After anything but `more` the reader is spent. */
+  take(piece: Uint8Array): ReaderNews {
+    for (const byte of piece.subarray(0, Math.max(0, 32 - this.#first.length))) this.#first.push(byte);
+    let at = 0;
+    while (at < piece.length) {
+      if (this.#stage === 'data') {
+        at += this.#fill(piece.subarray(at));
+        if (this.#filled === this.#length) return this.#blockEnds(piece.subarray(at));
+        continue;
+      }
+      if (this.#stage === 'text') return this.#takeText(piece.subarray(at));
+      const news = this.#takeByte(piece[at]!, piece, at + 1);
+      if (news.kind !== 'more') return news;
+      at += 1;
+    }
+    return more;
+  }
+
+  #takeByte(byte: number, piece: Uint8Array, next: number): ReaderNews {
+    switch (this.#stage) {
+      case 'start':
+        return isSilence(byte) ? more : this.#begin(byte);
+      case 'digits':
+        return this.#takeDigits(byte);
+      case 'length':
+        return this.#takeLength(byte, piece, next);
+      default:
+        return more;
+    }
+  }
+
+  #begin(byte: number): ReaderNews {
+    if (this.#expected.kind === 'text') {
+      this.#stage = 'text';
+      this.#text = String.fromCharCode(byte);
+      return more;
+    }
+    if (byte !== hash) {
+      return this.#unreadable(
+        'a block was asked for and something else came: an old answer, or the trace format was changed',
+      );
+    }
+    this.#stage = 'digits';
+    return more;
+  }
+
+  /** Latin-1: identities and error texts carry signs beyond ASCII, and no byte may be lost. */
+  #takeText(bytes: Uint8Array): ReaderNews {
+    const end = bytes.indexOf(lineFeed);
+    const line = end < 0 ? bytes : bytes.subarray(0, end);
+    // A block where a line is expected: its data would be taken for lines.
+    if (this.#text === '#' && line[0] !== undefined && digitOf(line[0]) !== undefined) {
+      return this.#unreadable('a text was asked for and a block came: the trace format was changed');
+    }
+    if (this.#text.length + line.length > this.#expected.maxBytes) {
+      return this.#unreadable(`the answer is longer than ${this.#expected.maxBytes} bytes`);
+    }
+    this.#text += Buffer.from(line).toString('latin1');
+    if (end < 0) return more;
+    this.#stage = 'done';
+    return { kind: 'text', text: this.#text.replace(/\r+$/, ''), rest: bytes.subarray(end + 1) };
+  }
+
+  #takeDigits(byte: number): ReaderNews {
+    const digits = digitOf(byte);
+    if (digits === 0) {
+      return this.#unreadable(
+        'the block has no stated length (#0) and its end cannot be seen on a socket; use another trace format',
+      );
+    }
+    if (digits === undefined) return this.#unreadable('no digit follows the # of the block');
+    this.#digitsLeft = digits;
+    this.#stage = 'length';
+    return more;
+  }
+
+  #takeLength(byte: number, piece: Uint8Array, next: number): ReaderNews {
+    const digit = digitOf(byte);
+    if (digit === undefined) return this.#unreadable('the length of the block is no number');
+    this.#length = this.#length * 10 + digit;
+    this.#digitsLeft -= 1;
+    if (this.#digitsLeft > 0) return more;
+    if (this.#length > this.#expected.maxBytes) {
+      return this.#unreadable(
+        `the block announces ${this.#length} bytes, at most ${this.#expected.maxBytes} can be right`,
+      );
+    }
+    this.#data = new Uint8Array(this.#length);
+    this.#stage = 'data';
+    return this.#length === 0 ? this.#blockEnds(piece.subarray(next)) : more;
+  }
+
+  #fill(bytes: Uint8Array): number {
+    const taken = bytes.subarray(0, this.#length - this.#filled);
+    this.#data.set(taken, this.#filled);
+    this.#filled += taken.length;
+    return taken.length;
+  }
+
+  #blockEnds(rest: Uint8Array): ReaderNews {
+    this.#stage = 'done';
+    return { kind: 'block', data: this.#data, rest };
+  }
+
+  #unreadable(because: string): ReaderNews {
+    this.#stage = 'done';
+    const code = this.#expected.kind === 'block' ? 'ANALYZER_BAD_BLOCK' : 'ANALYZER_BAD_ANSWER';
+    return { kind: 'unreadable', code, because, firstBytesHex: hexOf(Uint8Array.from(this.#first)) };
+  }
+}

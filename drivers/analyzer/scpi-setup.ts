@@ -1,0 +1,232 @@
+// A sweep's settings to the instrument and back: everything is sent, everything is read back, and what
+// the instrument accepted is compared with what was asked, for it coerces values without a word.
+import { DriverError } from '../errors.ts';
+import type { PreparedSweep, SweepSetup } from './analyzer.ts';
+import type { ScpiConversation } from './scpi-conversation.ts';
+import type { TemplateName } from './scpi-dialects.ts';
+import { errorOf } from './scpi-status.ts';
+
+/** −113, undefined header: what an instrument says to a command it does not have. */
+const undefinedHeader = -113;
+/** Read-back is printed with 7 digits at worst; a synthesizer's own steps are finer than this. */
+const frequencyTolerance = 1e-6;
+/** Axes in single precision or short decimals are coarser than the grid they stand for. */
+const axisTolerance = 5e-6;
+const bandwidthTolerance = 1e-3;
+const powerToleranceDb = 0.01;
+
+export interface InstrumentSweep extends PreparedSweep {
+  startHz: number;
+  stopHz: number;
+  /** One sweep of the average, as the instrument states it. */
+  sweepMs: number;
+}
+
+/**
+ * Sends the whole setup and proves it. Throws ANALYZER_COMMAND_REFUSED, ANALYZER_SETTING_DIFFERS (facts:
+ * setting, asked, got), ANALYZER_BAD_DIALECT, and what the session throws.
+ */
+export async function applySetup(talk: ScpiConversation, setup: SweepSetup): Promise<InstrumentSweep> {
+  // Errors of before are not ours: left there, they would be laid to the first batch.
+  await talk.drain();
+  await applyModes(talk);
+  await applySweep(talk, setup);
+  await applyParameters(talk, setup);
+  await confirmModes(talk, setup);
+  const sweep = await confirmSweep(talk, setup);
+  await confirmParameters(talk, setup);
+  await talk.throwErrors('the read-back of the settings');
+  return sweep;
+}
+
+async function applyModes(talk: ScpiConversation): Promise<void> {
+  const { format, byteOrder } = talk.traceForm;
+  await talk.tell('abort');
+  await talk.tell('continuousOff');
+  await talk.tell(demand(talk, formatTemplates[format]));
+  if (format !== 'ascii') {
+    if (byteOrder === 'swapped') await talk.tell(demand(talk, 'byteOrderSwapped'));
+    else await talk.tell('byteOrderNormal');
+  }
+  await talk.throwErrors('single sweeps and trace format');
+  await tellIfKnown(talk, 'triggerImmediate');
+  await tellIfKnown(talk, 'sweepTypeLinear');
+}
+
+const formatTemplates = { real64: 'formatReal64', real32: 'formatReal32', ascii: 'formatAscii' } as const;
+
+function demand(talk: ScpiConversation, name: TemplateName): TemplateName {
+  if (talk.has(name)) return name;
+  throw new DriverError(
+    'ANALYZER_BAD_DIALECT',
+    `the trace format of the range file needs '${name}', which the dialect ${talk.dialect.name} does not have`,
+    { template: name, dialect: talk.dialect.name },
+  );
+}
+
+/** Sends a command by itself; "unknown command" is accepted where the dialect says that it may be. */
+async function tellIfKnown(talk: ScpiConversation, name: TemplateName): Promise<void> {
+  if (!talk.has(name)) return;
+  await talk.tell(name);
+  const entries = await talk.drain();
+  const harmless = talk.dialect.mayBeUnknown.includes(name);
+  const error = errorOf(
+    entries.filter(({ code }) => !(harmless && code === undefinedHeader)),
+    name,
+  );
+  if (error) throw error;
+}
+
+async function applySweep(talk: ScpiConversation, setup: SweepSetup): Promise<void> {
+  const { startHz, stopHz, averages } = setup;
+  // The edges must never cross, not even between two commands: some instruments refuse that, others move
+  // the other edge along.
+  if (startHz >= (await talk.askNumber('stopFrequencyQuery'))) {
+    await talk.tell('stopFrequency', { value: stopHz });
+    await talk.tell('startFrequency', { value: startHz });
+  } else {
+    await talk.tell('startFrequency', { value: startHz });
+    await talk.tell('stopFrequency', { value: stopHz });
+  }
+  await talk.tell('points', { value: setup.points });
+  await talk.tell('ifBandwidth', { value: setup.ifBandwidthHz });
+  await talk.tell('power', { value: setup.powerDbm });
+  if (averages > 1) {
+    await talk.tell(demand(talk, 'averagingCount'), { value: averages });
+    await talk.tell(demand(talk, 'averagingState'), { onOff: 'ON' });
+  } else {
+    await talk.tell('averagingState', { onOff: 'OFF' });
+  }
+  await talk.throwErrors('frequencies, points, bandwidth, power and averaging');
+}
+
+async function applyParameters(talk: ScpiConversation, { parameters }: SweepSetup): Promise<void> {
+  await talk.tell('parameterCount', { count: parameters.length });
+  for (const [index, parameter] of parameters.entries()) {
+    await talk.tell('parameterDefine', { trace: index + 1, parameter });
+  }
+  await talk.throwErrors('the definition of the S-parameters');
+}
+
+/** Throws ANALYZER_SETTING_DIFFERS unless `got` is what was asked. */
+export function requireSetting(
+  setting: string,
+  asked: number | string | boolean,
+  got: number | string | boolean,
+  tolerance = 0,
+): void {
+  const same =
+    typeof asked === 'number' && typeof got === 'number' ? Math.abs(asked - got) <= tolerance : asked === got;
+  if (same) return;
+  throw new DriverError(
+    'ANALYZER_SETTING_DIFFERS',
+    `${setting}: ${asked} was asked for, the instrument has ${got}`,
+    { setting, asked, got },
+  );
+}
+
+async function confirmModes(talk: ScpiConversation, { averages }: SweepSetup): Promise<void> {
+  const { format, byteOrder } = talk.traceForm;
+  if (talk.has('continuousQuery')) {
+    requireSetting('continuous sweep', false, await talk.askBoolean('continuousQuery'));
+  }
+  if (talk.has('sweepTypeQuery')) {
+    requireSetting('sweep type', 'LIN', (await talk.askWord('sweepTypeQuery')).slice(0, 3));
+  }
+  if (talk.has('formatQuery')) {
+    requireSetting('trace format', format, formatOf(await talk.askWord('formatQuery')));
+  }
+  if (format !== 'ascii' && talk.has('byteOrderQuery')) {
+    const word = await talk.askWord('byteOrderQuery');
+    const got = word.startsWith('SWAP') ? 'swapped' : word.startsWith('NORM') ? 'normal' : word;
+    requireSetting('byte order', byteOrder, got);
+  }
+  if (talk.has('averagingStateQuery')) {
+    requireSetting('averaging', averages > 1, await talk.askBoolean('averagingStateQuery'));
+  }
+  if (averages > 1 && talk.has('averagingCountQuery')) {
+    requireSetting('averages', averages, await talk.askNumber('averagingCountQuery'));
+  }
+}
+
+/** `REAL,64`, `REAL,+32`, `REAL64`, `ASC`, `ASCII,0` … in one of our words; anything else as it is. */
+function formatOf(word: string): string {
+  if (word.startsWith('ASC')) return 'ascii';
+  const bits = /^REAL,?\+?(\d+)$/.exec(word)?.[1];
+  return bits === undefined ? word : `real${bits}`;
+}
+
+async function confirmSweep(talk: ScpiConversation, setup: SweepSetup): Promise<InstrumentSweep> {
+  const { startHz, stopHz } = await confirmGrid(talk, setup);
+  const ifBandwidthHz = await talk.askNumber('ifBandwidthQuery');
+  requireSetting(
+    'IF bandwidth (Hz)',
+    setup.ifBandwidthHz,
+    ifBandwidthHz,
+    setup.ifBandwidthHz * bandwidthTolerance,
+  );
+  const powerDbm = await talk.askNumber('powerQuery');
+  requireSetting('power (dBm)', setup.powerDbm, powerDbm, powerToleranceDb);
+  const sweepMs = await askSweepMs(talk, setup);
+  return {
+    startHz,
+    stopHz,
+    frequenciesHz: linearGrid(startHz, stopHz, setup.points),
+    ifBandwidthHz,
+    powerDbm,
+    averages: setup.averages,
+    parameters: setup.parameters,
+    sweepMs,
+    acquisitionMs: sweepMs * setup.averages,
+  };
+}
+
+/** Start, stop and points as the instrument has them now, compared with the setup. */
+export async function confirmGrid(
+  talk: ScpiConversation,
+  setup: Pick<SweepSetup, 'startHz' | 'stopHz' | 'points'>,
+): Promise<{ startHz: number; stopHz: number }> {
+  requireSetting('points', setup.points, await talk.askNumber('pointsQuery'));
+  const startHz = await talk.askNumber('startFrequencyQuery');
+  requireSetting('start frequency (Hz)', setup.startHz, startHz, setup.startHz * frequencyTolerance);
+  const stopHz = await talk.askNumber('stopFrequencyQuery');
+  requireSetting('stop frequency (Hz)', setup.stopHz, stopHz, setup.stopHz * frequencyTolerance);
+  return { startHz, stopHz };
+}
+
+/** The axis as the instrument reports it, compared point by point; also shows a wrong byte order. */
+export async function confirmAxis(talk: ScpiConversation, frequenciesHz: Float64Array): Promise<void> {
+  const axis = await talk.askNumbers('frequencyAxisQuery', frequenciesHz.length);
+  for (const [index, asked] of frequenciesHz.entries()) {
+    requireSetting(`frequency of point ${index + 1} (Hz)`, asked, axis[index]!, asked * axisTolerance);
+  }
+}
+
+/** N frequencies from start to stop, both ends included. */
+export function linearGrid(startHz: number, stopHz: number, points: number): Float64Array {
+  const stepHz = points > 1 ? (stopHz - startHz) / (points - 1) : 0;
+  return Float64Array.from({ length: points }, (_, index) =>
+    index === points - 1 && points > 1 ? stopHz : startHz + index * stepHz,
+  );
+}
+
+/** One sweep as the instrument states it, or estimated from the filter's settling where it does not. */
+async function askSweepMs(talk: ScpiConversation, setup: SweepSetup): Promise<number> {
+  const stated = talk.has('sweepTimeQuery') ? 1000 * (await talk.askNumber('sweepTimeQuery')) : 0;
+  if (stated <= 0) return setup.points * (1 + 2000 / setup.ifBandwidthHz);
+  return talk.dialect.sweepTimeCovers === 'whole-average' ? stated / setup.averages : stated;
+}
+
+async function confirmParameters(talk: ScpiConversation, { parameters }: SweepSetup): Promise<void> {
+  if (talk.has('parameterCountQuery')) {
+    requireSetting('number of S-parameters', parameters.length, await talk.askNumber('parameterCountQuery'));
+  }
+  if (!talk.has('parameterDefineQuery')) return;
+  for (const [index, parameter] of parameters.entries()) {
+    requireSetting(
+      `S-parameter of trace ${index + 1}`,
+      parameter,
+      await talk.askWord('parameterDefineQuery', { trace: index + 1 }),
+    );
+  }
+}
