@@ -49,10 +49,7 @@ export class NecAntenna implements Antenna {
     this.crossRatio = crossRatio;
     this.#data = data;
     this.#boresightPhasesDeg = unwrapDegrees(data.azimuth.map((cut) => cut.phaseDeg[0]!));
-    this.#knots = data.azimuth.map((azimuth, k) => ({
-      azimuth: seriesOf(azimuth, this.#boresightPhasesDeg[k]!, data.floorDbi),
-      elevation: seriesOf(data.elevation[k]!, this.#boresightPhasesDeg[k]!, data.floorDbi),
-    }));
+    this.#knots = knotsOf(data, this.#boresightPhasesDeg);
   }
 
   complexGain(frequencyHz: number, azimuthDeg: number, elevationDeg: number) {
@@ -158,6 +155,21 @@ class NecOnGrid implements AntennaOnGrid {
     }
     return { azimuth, elevation };
   }
+}
+
+/** Worked out once per set of cuts: nights build many scenes of the same antennas. */
+const knownKnots = new WeakMap<WireAntennaData['azimuth'], readonly CutSeries[]>();
+
+function knotsOf(data: WireAntennaData, boresightPhasesDeg: readonly number[]): readonly CutSeries[] {
+  let knots = knownKnots.get(data.azimuth);
+  if (!knots) {
+    knots = data.azimuth.map((azimuth, k) => ({
+      azimuth: seriesOf(azimuth, boresightPhasesDeg[k]!, data.floorDbi),
+      elevation: seriesOf(data.elevation[k]!, boresightPhasesDeg[k]!, data.floorDbi),
+    }));
+    knownKnots.set(data.azimuth, knots);
+  }
+  return knots;
 }
 
 /** Discrete Fourier transform of a 1° cut, kept to ±harmonics, boresight phase taken out. */
