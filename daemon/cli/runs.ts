@@ -17,19 +17,23 @@ interface ArchiveOptions {
   json?: boolean;
 }
 
+interface ShowOptions extends ArchiveOptions {
+  levels?: boolean;
+}
+
 export function addRunsCommands(program: Command, outside: Surroundings, _finish: Finish): void {
   withArchive(program.command('runs').description('list the runs of the archive, newest first')).action(
-    (options: ArchiveOptions) =>
-      onArchive(options, outside, (archive) => printRuns(archive, options, outside)),
+    (options: ArchiveOptions) => onArchive(options, (archive) => printRuns(archive, options, outside)),
   );
   withArchive(
     program
       .command('show')
       .description('figures of one run')
-      .argument('<run>', 'number of the run, as `runs` lists it', runNumber),
-  ).action((run: number, options: ArchiveOptions) =>
-    onArchive(options, outside, (archive) =>
-      printRun(archive, run, { json: options.json ?? false }, outside),
+      .argument('<run>', 'number of the run, as `runs` lists it', runNumber)
+      .option('--levels', 'with --json: also the level at every angle, for plots'),
+  ).action((run: number, options: ShowOptions) =>
+    onArchive(options, (archive) =>
+      printRun(archive, run, { json: options.json ?? false, levels: options.levels ?? false }, outside),
     ),
   );
 }
@@ -41,14 +45,8 @@ function withArchive(command: Command): Command {
     .option('--json', 'print one JSON document');
 }
 
-async function onArchive(
-  options: ArchiveOptions,
-  outside: Surroundings,
-  act: (archive: Archive) => Promise<void>,
-): Promise<void> {
-  const path = options.archive
-    ? resolve(options.archive)
-    : (await loadRangeFile(options.range)).archive;
+async function onArchive(options: ArchiveOptions, act: (archive: Archive) => Promise<void>): Promise<void> {
+  const path = options.archive ? resolve(options.archive) : (await loadRangeFile(options.range)).archive;
   // Reading must not create an archive where there is none.
   if (!existsSync(path)) {
     throw new DaemonError('FILE_UNREADABLE', `${path}: there is no archive here`, { path });
@@ -86,10 +84,10 @@ async function printRuns(archive: Archive, options: ArchiveOptions, outside: Sur
 export async function printRun(
   archive: Archive,
   run: number,
-  options: { json: boolean },
+  options: { json: boolean; levels?: boolean },
   outside: Surroundings,
 ): Promise<void> {
-  const document = await runFigures(archive, run);
+  const document = await runFigures(archive, run, { levels: options.levels ?? false });
   outside.stdout.write(options.json ? `${JSON.stringify(document)}\n` : renderFigures(document));
 }
 

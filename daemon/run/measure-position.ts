@@ -60,10 +60,7 @@ export async function measurePosition(
   );
   await tools.beforeDurable();
   signal.throwIfAborted();
-  const acquisition = await from(
-    'analyzer',
-    tools.analyzer.acquire(parametersOf(step, tools), signal),
-  );
+  const acquisition = await from('analyzer', tools.analyzer.acquire(parametersOf(step, tools), signal));
   return toSample(step, context, arrival, acquisition);
 }
 

@@ -124,12 +124,7 @@ export class RunLoop {
     }
   }
 
-  #sample(
-    step: PlannedStep,
-    attempt: number,
-    revisit: boolean,
-    signal: AbortSignal,
-  ): Promise<SampleRecord> {
+  #sample(step: PlannedStep, attempt: number, revisit: boolean, signal: AbortSignal): Promise<SampleRecord> {
     const { autPort } = this.#order;
     const tools: PositionTools = {
       ...this.#bench,

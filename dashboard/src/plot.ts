@@ -1,0 +1,25 @@
+// A plot in the page: one chart per element, redrawn when its option or its size changes.
+import { LineChart } from 'echarts/charts';
+import { GridComponent, LegendComponent, MarkLineComponent, PolarComponent } from 'echarts/components';
+import { init, use } from 'echarts/core';
+import { SVGRenderer } from 'echarts/renderers';
+import { type ComponentChild, h } from 'preact';
+import { useEffect, useRef } from 'preact/hooks';
+import type { PlotOption } from '../plots/palette.ts';
+
+use([LineChart, GridComponent, LegendComponent, MarkLineComponent, PolarComponent, SVGRenderer]);
+
+export function Plot({ option, label }: { option: PlotOption; label: string }): ComponentChild {
+  const element = useRef<HTMLDivElement>(null);
+  useEffect(() => {
+    const chart = init(element.current!, null, { renderer: 'svg' });
+    chart.setOption(option);
+    const sizes = new ResizeObserver(() => chart.resize());
+    sizes.observe(element.current!);
+    return () => {
+      sizes.disconnect();
+      chart.dispose();
+    };
+  }, [option]);
+  return h('div', { class: 'plot', ref: element, role: 'img', 'aria-label': label });
+}
