@@ -128,6 +128,8 @@ export class LineRunner {
       this.#finish(11);
       return;
     }
+    const remark = /^\s*\(MSG,(.*)\)\s*$/i.exec(line.raw);
+    if (remark && this.#traits.errorsStick) this.#host.say(`[MSG:${remark[1]}]`);
     if (line.text === '') {
       this.#stuckError = undefined;
       this.#finish();
@@ -146,8 +148,6 @@ export class LineRunner {
       this.#finishGcode(9);
       return;
     }
-    const remark = /^\s*\(MSG,(.*)\)\s*$/i.exec(line.raw);
-    if (remark && this.#traits.errorsStick) this.#host.say(`[MSG:${remark[1]}]`);
     const before = this.offsets.total;
     const acts = this.reader.read(line.text);
     if ('error' in acts) {
