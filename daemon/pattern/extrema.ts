@@ -63,8 +63,10 @@ export function extremaOf(cut: Cut, peak: Peak, options: ExtremaOptions = {}): E
     });
   }
   const along = (side: 'left' | 'right') => {
-    const flank = heldAt(flankOf(cut, peak.index, side), options.resolvedDb);
-    return turnsAlong(flank.levelDb, prominenceDb).map((turn) => placed(flank, turn));
+    const flank = flankOf(cut, peak.index, side);
+    return turnsAlong(heldAt(flank.levelDb, options.resolvedDb), prominenceDb).map((turn) =>
+      placed(flank, turn),
+    );
   };
   const right = along('right');
   const left = cut.periodic
@@ -106,9 +108,8 @@ export function turnsAlong(levelDb: Float64Array, prominenceDb: number): Turn[] 
   return turns;
 }
 
-function heldAt(flank: Flank, resolvedDb: number | undefined): Flank {
-  if (resolvedDb === undefined) return flank;
-  return { ...flank, levelDb: flank.levelDb.map((levelDb) => Math.max(levelDb, resolvedDb)) };
+function heldAt(levelDb: Float64Array, resolvedDb: number | undefined): Float64Array {
+  return resolvedDb === undefined ? levelDb : levelDb.map((level) => Math.max(level, resolvedDb));
 }
 
 function placed(flank: Flank, turn: Turn): Extremum {
