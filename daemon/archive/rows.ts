@@ -97,16 +97,17 @@ function finite(what: string, value: number): number {
 function jsonOf(what: string, value: unknown): string {
   const text = JSON.stringify(value, (_key, part: unknown) => {
     if (typeof part === 'number') return finite(what, part);
-    return ArrayBuffer.isView(part) ? [...(part as Float64Array)] : part;
+    return ArrayBuffer.isView(part) ? Array.from(part as Float64Array) : part;
   }) as string | undefined;
   if (text === undefined) throw defect(what, 'there is no value');
   return text;
 }
 
-/** Facts must never cost the event they belong to: a number JSON has no word for is kept as its name. */
+/** Facts must never cost the event they belong to: what JSON has no word for is kept as text. */
 function factsJsonOf(facts: RunEventRecord['facts']): string {
   return JSON.stringify(facts, (_key, part: unknown) => {
     if (typeof part === 'bigint' || (typeof part === 'number' && !Number.isFinite(part))) return `${part}`;
+    if (part instanceof Error) return part.message;
     return ArrayBuffer.isView(part) ? Array.from(part as Float64Array) : part;
   });
 }

@@ -36,7 +36,9 @@ export function archiveError(intent: Intent, what: string, error: unknown, facts
   if (error instanceof DaemonError) return error;
   const said = error instanceof Error ? error.message : String(error);
   if (!(error instanceof Database.SqliteError)) {
-    return new DaemonError('DEFECT', `${what}: ${said}`, facts, error);
+    // JSON was checked when it was written; what no longer parses has been altered since.
+    const damaged = intent === 'read' && error instanceof SyntaxError;
+    return new DaemonError(damaged ? 'ARCHIVE_DAMAGED' : 'DEFECT', `${what}: ${said}`, facts, error);
   }
   const kind = family(error.code);
   const remedy = remedies[kind];

@@ -291,10 +291,17 @@ describe.each(implementations)('archive %s', (_name, open) => {
         reach: Number.NEGATIVE_INFINITY,
         count: 3n,
         levels: Float64Array.of(1, 2),
+        first: new Error('link closed'),
       };
       await archive.addEvent(run, { ...event, facts });
       const [read] = await archive.events(run);
-      expect(read!.facts).toEqual({ sigma: 'NaN', reach: '-Infinity', count: '3', levels: [1, 2] });
+      expect(read!.facts).toEqual({
+        sigma: 'NaN',
+        reach: '-Infinity',
+        count: '3',
+        levels: [1, 2],
+        first: 'link closed',
+      });
     });
   });
 
