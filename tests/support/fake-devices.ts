@@ -124,6 +124,7 @@ export class FakePositioner implements Positioner {
 
   async identify(): Promise<ControllerIdentity> {
     this.#note('identify');
+    this.referenceValid = false;
     return { family: 'realtime-status', firmware: 'fake', options: '' };
   }
 

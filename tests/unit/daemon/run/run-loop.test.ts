@@ -235,8 +235,9 @@ describe('trouble that passes', () => {
     });
     expect(outcome.state).toBe('complete');
     const restart = diary.lastIndexOf('positioner identify');
-    expect(diary.slice(restart, restart + 6)).toEqual([
+    expect(diary.slice(restart, restart + 7)).toEqual([
       'positioner identify',
+      'positioner home',
       'analyzer source on',
       'positioner move 0 again',
       'analyzer acquire',
