@@ -7,7 +7,6 @@ process.exitCode = await runCommandLine(process.argv.slice(2), {
   clock: new SystemClock(),
   stdout: process.stdout,
   stderr: process.stderr,
-  folder: process.cwd(),
   onStopSignal: (stop) => {
     process.on('SIGINT', stop);
     process.on('SIGTERM', stop);
