@@ -1,7 +1,7 @@
 // The archive's calls over one SQLite connection, synchronously: when a call returns, its transaction is
 // committed. The SQL of the daemon is here and in schema.ts, nowhere else. Promises and threads are put
 // around it by in-thread-archive.ts and worker-archive.ts.
-import type { Database, Statement } from 'better-sqlite3';
+import SqliteDatabase, { type Database, type Statement } from 'better-sqlite3';
 import { DaemonError } from '../errors.ts';
 import type {
   NewRun,
@@ -36,6 +36,8 @@ import {
   summaryOfRow,
 } from './rows.ts';
 import { archiveError, type Intent } from './sqlite-errors.ts';
+
+const { SqliteError } = SqliteDatabase;
 
 /** What is written into each table, a named parameter for every column. */
 const columns = {
@@ -190,15 +192,17 @@ export class SqliteStore {
     });
   }
 
-  /** Copies the write-ahead log into the file as far as readers allow. Closing again does nothing. */
+  /** Copies the write-ahead log into the file as far as disk and readers allow. Closing again does nothing. */
   close(): void {
     if (!this.#database.open) return;
     try {
-      // Passive: it waits for nobody. What stays in the log is as durable as before.
+      // Passive: it waits for nobody.
       if (!this.#database.memory && !this.#database.readonly)
         this.#database.pragma('wal_checkpoint(PASSIVE)');
     } catch (error) {
-      throw this.#failure('write', 'checkpoint the archive', error, {});
+      // A full disk must not turn a finished run into a failed one: what stays in the log is as durable
+      // as before, and the next one to open the archive copies it.
+      if (!(error instanceof SqliteError)) throw this.#failure('write', 'close the archive', error, {});
     } finally {
       this.#database.close();
     }

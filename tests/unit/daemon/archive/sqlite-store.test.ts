@@ -111,4 +111,21 @@ describe('store', () => {
     await failure('DEFECT', async () => archive.addSegment(run, (await archive.segments(run))[0]!));
     expect(await archive.run(run)).toMatchObject({ state: 'interrupted', endedWallMs: 5, reason: 'wind' });
   });
+
+  it('closes on a full disk too, and loses nothing', async () => {
+    const path = freshPath();
+    const { archive, database } = opened(path);
+    const run = await startRun(archive);
+    await archive.addSample(run, sample(1));
+    let asked = '';
+    database.pragma = (source) => {
+      asked = source;
+      throw new Database.SqliteError('database or disk is full', 'SQLITE_FULL');
+    };
+    await archive.close();
+    expect(asked).toContain('wal_checkpoint');
+    expect(database.open).toBe(false);
+    const again = opened(path).archive;
+    expect(await again.samples(run)).toEqual([sample(1)]);
+  });
 });
