@@ -1,5 +1,6 @@
 // The shape of a range file field by field; what fields demand of each other is in parse-range-file.ts.
 import { z } from 'zod';
+import { dialectNames } from '../../drivers/analyzer/scpi-dialects.ts';
 import {
   axisName,
   choice,
@@ -72,7 +73,7 @@ export const rangeSchema = keys({
   heights: keys({ rangeAntenna: quantity('length', height), aut: quantity('length', height) }).optional(),
   analyzer: keys({
     link,
-    dialect: dialect(),
+    dialect: choice(dialectNames),
     autPort: wholeNumber(1, 2),
     trace: trace.prefault({}),
   }),
@@ -104,10 +105,4 @@ function sense() {
       return z.NEVER;
     })
     .meta({ type: 'integer', enum: [1, -1] });
-}
-
-/** Only the form: which dialects there are is the analyzer's knowledge, told when the bench opens. */
-function dialect() {
-  const expectation = 'a dialect such as numbered-parameter';
-  return z.string({ error: expectation }).regex(/^[a-z][a-z0-9-]{0,39}$/, { error: expectation });
 }

@@ -153,6 +153,7 @@ const wrong: [number, string | undefined, number, string][] = [
     'positioner.link: expected another address than analyzer.link; found "tcp://[::1]:5026"',
   ],
   [8, '  dialect: Numbered Parameter', 8, 'analyzer.dialect: expected '],
+  [8, '  dialect: hand-made', 8, 'analyzer.dialect: expected '],
   [9, '  autPort: 3', 9, 'analyzer.autPort: expected a whole number from 1 to 2; found 3'],
   [9, '  autPort: 1.0', 9, 'analyzer.autPort: expected a whole number from 1 to 2; found 1.0'],
   [11, '    format: real', 11, 'analyzer.trace.format: expected one of real64, real32, ascii; found "real"'],

@@ -55,6 +55,12 @@ describe('what remains of a run', () => {
     expect(remaining(reference, reference.slice(0, 2))).toHaveLength(3);
   });
 
+  it('takes no tie of a finished cut for boresight samples before it', () => {
+    const cuts = [cut({ fromDeg: 0, toDeg: 10, stepDeg: 10 })];
+    const all = expandPlan(plan({ kind: 'reference', cuts }), range(axis())).steps;
+    expect(short(remaining(all, all.slice(1)))).toStrictEqual(['reference  0']);
+  });
+
   it('and what is stored make up every sample once, and every sample left has ties around it', () => {
     fc.assert(
       fc.property(fc.array(fc.boolean(), { minLength: steps.length, maxLength: steps.length }), (kept) => {
