@@ -272,11 +272,12 @@ function causeOf(error: unknown, signal: AbortSignal): unknown {
   return error instanceof StepFailure ? error.cause : error;
 }
 
-/** Trouble with the world can be resumed; a defect or a damaged archive cannot. */
+const resumableCodes: readonly string[] = ['RUN_INTERRUPTED', 'RUN_GAVE_UP', 'ARCHIVE_WRITE_FAILED'];
+
+/** Trouble with the world, a full disk among it, can be resumed; a defect cannot. */
 function stateAfter(error: unknown): 'interrupted' | 'failed' {
   const resumable =
-    isDriverError(error) ||
-    (error instanceof DaemonError && (error.code === 'RUN_INTERRUPTED' || error.code === 'RUN_GAVE_UP'));
+    isDriverError(error) || (error instanceof DaemonError && resumableCodes.includes(error.code));
   return resumable ? 'interrupted' : 'failed';
 }
 

@@ -347,7 +347,7 @@ describe('trouble that stays', () => {
         };
       },
     });
-    expect(outcome.state).toBe('failed');
+    expect(outcome.state).toBe('interrupted');
     expect(outcome.error).toMatchObject({ code: 'ARCHIVE_WRITE_FAILED' });
     expect(diary.filter((line) => line === 'analyzer acquire')).toHaveLength(2);
   });
