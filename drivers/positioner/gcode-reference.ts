@@ -121,6 +121,13 @@ export class GcodeReference {
     this.#lastTrusted = position;
   }
 
+  /** A connection stands. A restart on the first one took nothing away: nothing had been trusted before. */
+  connected(): void {
+    if (this.#lastTrusted) return;
+    this.#lostBecause = undefined;
+    this.#coordinateDoubtful = false;
+  }
+
   /** The controller has been unlocked or homed. */
   clearAlarm(): void {
     this.#alarm = undefined;

@@ -1,7 +1,7 @@
 // One line, one answer, over a link; urgent single bytes overtake whatever waits. Everything the controller
 // says unasked is an event. Knows nothing of axes. After an answer that never came, or came with an alarm,
 // the two sides are out of step: the next line first makes them agree again.
-import { type Observable, Subject, type Subscription } from 'rxjs';
+import { type Observable, Subject } from 'rxjs';
 import type { Clock } from '../clock.ts';
 import { DriverError } from '../errors.ts';
 import { LineSplitter } from '../link/lines.ts';
@@ -57,7 +57,6 @@ export class GcodeSender {
   readonly #onTraffic: OnTraffic | undefined;
   readonly #splitter = new LineSplitter();
   readonly #events = new Subject<SenderEvent>();
-  readonly #subscriptions: Subscription[];
   #exchange: Exchange | undefined;
   #queue: Promise<unknown> = Promise.resolve();
   #outOfStep = true;
@@ -67,21 +66,14 @@ export class GcodeSender {
     this.#link = link;
     this.#clock = clock;
     this.#onTraffic = onTraffic;
-    this.#subscriptions = [
-      link.received$.subscribe((bytes) => {
-        for (const text of this.#splitter.push(bytes)) this.#receive(text);
-      }),
-      link.closed$.subscribe((news) => this.#closed(news)),
-    ];
+    link.received$.subscribe((bytes) => {
+      for (const text of this.#splitter.push(bytes)) this.#receive(text);
+    });
+    link.closed$.subscribe((news) => this.#closed(news));
   }
 
   get events$(): Observable<SenderEvent> {
     return this.#events;
-  }
-
-  /** Stops listening to the link, which stays as it is. */
-  dispose(): void {
-    for (const subscription of this.#subscriptions) subscription.unsubscribe();
   }
 
   /**
@@ -327,6 +319,7 @@ export class GcodeSender {
   }
 
   #write(bytes: Uint8Array): void {
+    // With no exchange open the link's own `closed` event tells, or the report that does not come.
     this.#link.write(bytes).catch((error: unknown) => this.#exchange?.reject(error));
   }
 

@@ -33,7 +33,7 @@ export function missingSettings(settings: Settings, axes: readonly AxisSetup[], 
     const index = letters.indexOf(axis.word);
     return [stepsPerUnit + index, maxRate + index, acceleration + index];
   });
-  return [idleDelay, inches, ...perAxis].filter((number) => valueOf(settings, number) === undefined);
+  return [idleDelay, inches, ...perAxis].filter((number) => numberOf(settings, number) === undefined);
 }
 
 /** Throws POSITIONER_UNSAFE_SETTING with the number, its value and what it would have to be. */
@@ -51,9 +51,9 @@ export function checkSettings(settings: Settings, axes: readonly AxisSetup[], le
 }
 
 function checkMotorsStayOn(settings: Settings, axes: readonly AxisSetup[], letters: string): void {
-  const delayMs = valueOf(settings, idleDelay);
+  const delayMs = numberOf(settings, idleDelay);
   if (delayMs === undefined || delayMs === alwaysOn) return;
-  const mask = valueOf(settings, keepEnabledMask) ?? 0;
+  const mask = numberOf(settings, keepEnabledMask) ?? 0;
   const staysOn = (axis: AxisSetup): boolean => ((mask >> letters.indexOf(axis.word)) & 1) === 1;
   if (axes.every(staysOn)) return;
   throw unsafe(idleDelay, delayMs, 'motors are switched off between points: wind turns the axes', '255');
@@ -63,7 +63,7 @@ function checkAxis(settings: Settings, axis: AxisSetup, index: number): void {
   const isPositive = (value: number): boolean => value > 0;
   for (const base of [stepsPerUnit, maxRate, acceleration])
     demand(settings, base + index, isPositive, `${axis.name} cannot move`, 'above 0');
-  const steps = valueOf(settings, stepsPerUnit + index);
+  const steps = numberOf(settings, stepsPerUnit + index);
   if (steps === undefined) return;
   const halfStepDeg = Math.abs(degreesOf(axis, 0.5 / steps + reportRounding));
   if (halfStepDeg <= axis.toleranceDeg) return;
@@ -82,7 +82,7 @@ function demand(
   what: string,
   needed: string,
 ): void {
-  const value = valueOf(settings, number);
+  const value = numberOf(settings, number);
   if (value !== undefined && !isSafe(value)) throw unsafe(number, value, what, needed);
 }
 
@@ -103,8 +103,8 @@ export function limitsFrom(
   return Object.fromEntries(
     axes.map((axis) => {
       const index = letters.indexOf(axis.word);
-      const rate = valueOf(settings, maxRate + index) ?? Number.POSITIVE_INFINITY;
-      const ramp = valueOf(settings, acceleration + index) ?? Number.POSITIVE_INFINITY;
+      const rate = numberOf(settings, maxRate + index) ?? Number.POSITIVE_INFINITY;
+      const ramp = numberOf(settings, acceleration + index) ?? Number.POSITIVE_INFINITY;
       const limits: AxisLimits = {
         rateDegPerS: Math.min(axis.rateDegPerS, Math.abs(degreesOf(axis, rate / 60))),
         accelerationDegPerS2: Math.min(axis.accelerationDegPerS2, Math.abs(degreesOf(axis, ramp))),
@@ -123,12 +123,12 @@ export function homingSeconds(settings: Settings, axes: readonly AxisSetup[], le
   for (const axis of axes) {
     const index = letters.indexOf(axis.word);
     const rangeUnits = Math.abs((axis.travelMaxDeg - axis.travelMinDeg) * axis.unitsPerDegree);
-    const searchUnits = 1.5 * Math.max(rangeUnits, valueOf(settings, travel + index) ?? 0);
+    const searchUnits = 1.5 * Math.max(rangeUnits, numberOf(settings, travel + index) ?? 0);
     const axisRate = Math.abs(axis.rateDegPerS * axis.unitsPerDegree) * 60;
     const rate = Math.min(
       axisRate,
-      valueOf(settings, seekRate) ?? axisRate,
-      valueOf(settings, maxRate + index) ?? axisRate,
+      numberOf(settings, seekRate) ?? axisRate,
+      numberOf(settings, maxRate + index) ?? axisRate,
     );
     seconds += (searchUnits / Math.max(rate, 1e-3)) * 60;
   }
@@ -136,7 +136,7 @@ export function homingSeconds(settings: Settings, axes: readonly AxisSetup[], le
 }
 
 /** undefined when the setting was not printed or is no number. */
-function valueOf(settings: Settings, number: number): number | undefined {
+function numberOf(settings: Settings, number: number): number | undefined {
   const text = settings.get(number);
   if (text === undefined || text === '') return undefined;
   const value = Number(text);

@@ -208,7 +208,7 @@ function unitsInside(axis: AxisSetup, targetDeg: number): number {
 }
 
 function decimalsOf(units: number): number {
-  const wholeDigits = Math.trunc(Math.abs(units) + 1).toString().length;
+  const wholeDigits = Math.trunc(Math.abs(units)).toString().length;
   return Math.max(0, Math.min(maxDecimals, maxDigits - wholeDigits));
 }
 

@@ -1,0 +1,61 @@
+// Making the coordinates true: the controller's homing cycle where axes have switches, unlocking where they
+// have none. An axis without a switch is believed at the controller's zero, but not after a restart moved that
+// zero under it: then somebody has to set it by hand.
+import { DriverError } from '../errors.ts';
+import { alarmMeaning } from './gcode-meanings.ts';
+import { awaitRest, type GcodeParts, lineWithinMs, pollMs, readPlaced, setModes } from './gcode-parts.ts';
+import { alarmError } from './gcode-sender.ts';
+import { homingSeconds } from './gcode-settings.ts';
+import type { Position } from './positioner.ts';
+
+const bannerMs = 3_000;
+/** A failed cycle is followed by a banner within some 25 ms, even where its alarm was lost on the wire. */
+const afterHomingMs = 300;
+
+export interface HomeOptions {
+  believeZeroAfterRestart: boolean;
+  /** Called right before the cycle begins to move. */
+  onMotion: () => void;
+}
+
+export async function homeAxes(parts: GcodeParts, options: HomeOptions, signal: AbortSignal): Promise<void> {
+  await leaveMuteAlarm(parts, signal);
+  const before = await readPlaced(parts, signal);
+  const locked = before.report.state === 'Alarm';
+  if (!locked) await awaitRest(parts, signal);
+  if (parts.axes.some((axis) => axis.homing === 'switch')) {
+    options.onMotion();
+    const withinMs = homingSeconds(parts.settings, parts.axes, parts.reference.letters) * 1000;
+    await parts.sender.line('$H', { withinMs, signal });
+    await parts.clock.sleep(afterHomingMs, signal);
+  } else if (locked) {
+    await parts.sender.line('$X', { withinMs: lineWithinMs, signal });
+  }
+  const after = await readPlaced(parts, signal);
+  if (after.report.state === 'Alarm') throw alarmError(parts.reference.alarm, parts.link.name);
+  await awaitRest(parts, signal);
+  parts.reference.clearAlarm();
+  await setModes(parts, signal);
+  const { position } = await readPlaced(parts, signal);
+  if (!options.believeZeroAfterRestart) demandContinuity(parts, position);
+  parts.reference.trust(position);
+}
+
+/** After some alarms nothing is answered until a soft reset. Nothing moves then. */
+async function leaveMuteAlarm(parts: GcodeParts, signal: AbortSignal): Promise<void> {
+  const { alarm } = parts.reference;
+  if (alarm === undefined || alarmMeaning(alarm).wayOut !== 'reset') return;
+  await parts.sender.reset(bannerMs, signal);
+  await parts.clock.sleep(pollMs, signal);
+}
+
+function demandContinuity(parts: GcodeParts, position: Position): void {
+  for (const axis of parts.axes) {
+    if (axis.homing === 'switch' || parts.reference.isContinuous(axis, position)) continue;
+    throw new DriverError(
+      'POSITIONER_REFERENCE_LOST',
+      `${axis.name} has no homing switch and its zero has moved: set it to zero by hand and connect anew`,
+      { axis: axis.name, reportedDeg: position[axis.name] ?? 'unknown' },
+    );
+  }
+}

@@ -1,0 +1,130 @@
+// What the procedures of the positioner (connect, home, move, stop) work with, and the small steps they share:
+// a report with a position, waiting for rest, the memory mark that betrays an unseen restart.
+import type { Clock } from '../clock.ts';
+import { DriverError } from '../errors.ts';
+import type { Link } from '../link/link.ts';
+import type { GcodeReference, Placed } from './gcode-reference.ts';
+import { type ControllerLine, feedInParserState, isHeld, isMoving } from './gcode-reports.ts';
+import { alarmError, type GcodeSender } from './gcode-sender.ts';
+import type { Settings } from './gcode-settings.ts';
+import type { AxisSetup, Position } from './positioner.ts';
+import { motionSeconds } from './travel.ts';
+
+export interface GcodeParts {
+  axes: readonly AxisSetup[];
+  link: Link;
+  clock: Clock;
+  sender: GcodeSender;
+  reference: GcodeReference;
+  /** As read at connection; empty before. */
+  settings: Settings;
+  /** The controller prints its feed in the parser state, so that a lost memory can be noticed. */
+  memoryMark: boolean;
+}
+
+export const lineWithinMs = 2_000;
+export const pollMs = 200;
+const offsetReports = 40;
+
+/** A fresh report with a position in degrees. The offset of work positions comes with every tenth report or so. */
+export async function readPlaced(parts: GcodeParts, signal?: AbortSignal): Promise<Placed> {
+  for (let asked = 0; asked < offsetReports; asked += 1) {
+    const { report, monotonicMs } = await parts.sender.report(signal);
+    const placed = parts.reference.place(report, monotonicMs);
+    if (placed) return placed;
+    const axisCount = (report.machine ?? report.work)?.length ?? 0;
+    if (report.machine) throw missingAxis(parts, axisCount);
+    await parts.clock.sleep(pollMs / 4, signal);
+  }
+  throw new DriverError(
+    'POSITIONER_BAD_ANSWER',
+    `${parts.link.name} reports work positions and never their offset`,
+    { reports: offsetReports },
+  );
+}
+
+function missingAxis(parts: GcodeParts, axisCount: number): DriverError {
+  const letters = parts.reference.letters.slice(0, axisCount);
+  const axis = parts.axes.find((candidate) => !letters.includes(candidate.word));
+  return new DriverError(
+    'POSITIONER_UNEXPECTED_CONTROLLER',
+    `${parts.link.name} has the axes ${letters}, not ${axis?.word ?? 'those of the range'}`,
+    { axes: letters, wanted: parts.axes.map((each) => each.word).join('') },
+  );
+}
+
+/** Waits until nothing moves of itself any more (a hold released by hand, a jog) and refuses what waits for a person. */
+export async function awaitRest(parts: GcodeParts, signal?: AbortSignal): Promise<Placed> {
+  const deadlineMs = parts.clock.monotonicMs() + longestMotionMs(parts) * 1.5 + 5_000;
+  for (;;) {
+    const placed = await readPlaced(parts, signal);
+    const { report } = placed;
+    if (report.state === 'Alarm') throw alarmError(parts.reference.alarm, parts.link.name);
+    const late = parts.clock.monotonicMs() > deadlineMs;
+    if (isHeld(report) || late || (!isMoving(report) && report.state !== 'Idle')) {
+      throw new DriverError(
+        'POSITIONER_HELD',
+        `${parts.link.name} is in ${report.stateText} and waits for somebody at the machine`,
+        { state: report.stateText },
+      );
+    }
+    if (report.state === 'Idle') return placed;
+    await parts.clock.sleep(pollMs, signal);
+  }
+}
+
+function longestMotionMs(parts: GcodeParts): number {
+  const seconds = parts.axes.map((axis) => {
+    const limit = parts.reference.limits[axis.name] ?? axis;
+    return motionSeconds(
+      axis.travelMaxDeg - axis.travelMinDeg,
+      limit.rateDegPerS,
+      limit.accelerationDegPerS2,
+    );
+  });
+  return Math.max(0, ...seconds) * 1000;
+}
+
+/** The longest any axis takes to come to rest from its full rate. */
+export function brakingMs(parts: GcodeParts): number {
+  const seconds = parts.axes.map((axis) => {
+    const limit = parts.reference.limits[axis.name] ?? axis;
+    return limit.rateDegPerS / limit.accelerationDegPerS2;
+  });
+  return Math.max(0, ...seconds) * 1000;
+}
+
+/**
+ * Modes, and a feed as the memory mark: it stands in the parser state until the controller restarts. Motion
+ * lines carry their own modes and feed; this one only has to be sent after every restart or reset.
+ */
+export async function setModes(parts: GcodeParts, signal?: AbortSignal): Promise<void> {
+  await parts.sender.line('G21 G90 G94 F60', { withinMs: lineWithinMs, signal });
+  const lines = await parts.sender.line('$G', { withinMs: lineWithinMs, signal });
+  parts.memoryMark = feedIn(lines) !== undefined && feedIn(lines) !== 0;
+}
+
+/** The feed in a printed parser state; undefined when none was printed. */
+export function feedIn(lines: readonly ControllerLine[]): number | undefined {
+  for (const line of lines) {
+    if (line.kind === 'data' && line.key === 'GC') return feedInParserState(line.value);
+  }
+  return undefined;
+}
+
+/** After a lost answer: agrees with the controller again and throws POSITIONER_RESTARTED if its memory is gone. */
+export async function resyncAndCheckMemory(parts: GcodeParts, signal?: AbortSignal): Promise<void> {
+  const lines = await parts.sender.resync(signal);
+  if (!parts.memoryMark || feedIn(lines) !== 0) return;
+  const error = new DriverError(
+    'POSITIONER_RESTARTED',
+    `${parts.link.name} restarted unseen: it has forgotten its feed`,
+    { link: parts.link.name },
+  );
+  parts.reference.lose(error, true);
+  throw error;
+}
+
+export function samePlace(axes: readonly AxisSetup[], a: Position, b: Position): boolean {
+  return axes.every((axis) => a[axis.name] === b[axis.name]);
+}
