@@ -104,3 +104,8 @@ export const figuresDocument = z
 export type FiguresDocument = z.infer<typeof figuresDocument>;
 export type Flag = z.infer<typeof flag>;
 export type CutFigures = z.infer<typeof cut>;
+
+/** The JSON Schema of the document, as daemon/results/schema/figures.schema.json holds it. */
+export function figuresSchemaText(): string {
+  return `${JSON.stringify(z.toJSONSchema(figuresDocument), undefined, 2)}\n`;
+}

@@ -7,7 +7,7 @@ import { cutFigures } from '../pattern/figures.ts';
 import { gainConstantDb, ieeeGainDbi } from '../pattern/gain-transfer.ts';
 import { type CutLevels, cutLevels } from './cut-levels.ts';
 import { entryOf } from './figure-entry.ts';
-import type { CutFigures, FiguresDocument, Flag } from './figures-document.ts';
+import { type CutFigures, cutFigureKeys, type FiguresDocument, type Flag } from './figures-document.ts';
 import { cutFlags, runFlags } from './flags.ts';
 import { matchFigures } from './match-figures.ts';
 import { magnitudes, meanTrace } from './mean-trace.ts';
@@ -126,7 +126,7 @@ function rowOfFigures(
 ): FigureRow {
   const beside: FigureRow = { closureDb: levels.closureDb[k]!, driftDb: levels.driftDb[k]! };
   const cut = levels.cuts[k];
-  if (!cut) return beside;
+  if (!cut) return { ...noFigures(levels.because ?? 'the cut has no samples'), ...beside };
   const { gainReference } = run;
   const constantDb =
     gainReference &&
@@ -142,6 +142,10 @@ function rowOfFigures(
     gainDbi: ieeeGain(realized, reflected),
     ...beside,
   };
+}
+
+function noFigures(because: string): FigureRow {
+  return Object.fromEntries(cutFigureKeys.map((key) => [key, absentFigure(because)]));
 }
 
 function ieeeGain(realized: Figure, reflected: number | undefined): Figure {

@@ -24,7 +24,10 @@ it('says for each rule what proves it, and that test exists', () => {
     const named = Array.from(proof?.matchAll(/“([^”]+)”/g) ?? [], (match) => match[1] ?? '');
     expect(named.length, `${title}: names a test`).toBeGreaterThan(0);
     for (const name of named) {
-      expect(tests.some((source) => source.includes(name)), `${title}: test “${name}”`).toBe(true);
+      expect(
+        tests.some((source) => source.includes(name)),
+        `${title}: test “${name}”`,
+      ).toBe(true);
     }
   }
 });
