@@ -9,12 +9,14 @@ import { SimulatedClock } from '../../../../mocks/simulated-clock.ts';
 export class Visitor {
   readonly link: Link;
   readonly #clock: SimulatedClock;
-  #received: number[] = [];
+  #received: Uint8Array[] = [];
 
   constructor(link: Link, clock: SimulatedClock) {
     this.link = link;
     this.#clock = clock;
-    link.received$.subscribe((bytes) => this.#received.push(...bytes));
+    link.received$.subscribe((bytes) => {
+      this.#received.push(bytes);
+    });
   }
 
   async send(text: string): Promise<void> {
@@ -23,7 +25,7 @@ export class Visitor {
 
   /** All that came by now, one character per byte. */
   taken(): string {
-    const text = String.fromCharCode(...this.#received);
+    const text = Buffer.concat(this.#received).toString('latin1');
     this.#received = [];
     return text;
   }
