@@ -51,13 +51,11 @@ function highestWithin(cut: Cut, centreDeg: number, halfWidthDeg: number): numbe
     highestDb = Math.max(highestDb, edge.value);
   }
   if (!cut.periodic && gapLiesWithin(cut, centreDeg, halfWidthDeg)) return undefined;
-  const count = cut.anglesDeg.length;
-  for (let k = 0; k < count; k += 1) {
-    if (Math.abs(wrapDeg(cut.anglesDeg[k]! - centreDeg)) > halfWidthDeg) continue;
-    if (cut.levelDb[k]! <= highestDb) continue;
+  for (let k = 0; k < cut.anglesDeg.length; k += 1) {
+    if (Math.abs(wrapDeg(cut.anglesDeg[k]! - centreDeg)) > halfWidthDeg + 1e-9) continue;
     const lobe = isLocalMaximum(cut, k) ? refinedMaximum(cut, k) : undefined;
     const inside = lobe && Math.abs(wrapDeg(lobe.angleDeg - centreDeg)) <= halfWidthDeg;
-    highestDb = inside ? lobe.levelDb : cut.levelDb[k]!;
+    highestDb = Math.max(highestDb, inside ? lobe.levelDb : cut.levelDb[k]!);
   }
   return highestDb;
 }
