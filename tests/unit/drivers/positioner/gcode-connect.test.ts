@@ -121,6 +121,14 @@ describe('identify', () => {
     },
   );
 
+  it('does not take Idle for rest while the position changes', async () => {
+    const { clock, controller, positioner } = makeRig();
+    controller.spoil = (text) => text.replace('<Run', '<Idle');
+    const connecting = codeOf(clock, positioner.identify());
+    clock.at(clock.monotonicMs() + 1_000, () => controller.sendAsStranger('G1 X100 F600'));
+    expect(await connecting).toBe('POSITIONER_BUSY_AT_CONNECT');
+  });
+
   it('wakes a controller that sleeps', async () => {
     const { clock, controller, positioner } = makeRig({ startState: 'Sleep' });
     await clock.run(positioner.identify());

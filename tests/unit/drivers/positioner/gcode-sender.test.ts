@@ -82,6 +82,22 @@ describe('GcodeSender', () => {
     });
   });
 
+  it('waits out the answers to a first attempt at agreeing', async () => {
+    const { clock, sender, heard, say, wait } = await makeWire();
+    const agreeing = sender.resync();
+    const next = sender.line('G90', { withinMs });
+    await wait(1_600);
+    expect(heard).toEqual(['#\n$G\n', '#\n$G\n']);
+    say('error:1\n[GC:F0]\nok\n');
+    await wait(100);
+    say('error:1\n[GC:F0]\nok\n');
+    await clock.run(agreeing);
+    await wait(10);
+    expect(heard.at(-1)).toBe('G90\n');
+    say('ok\n');
+    expect(await clock.run(next)).toEqual([{ kind: 'ok' }]);
+  });
+
   it('is in step by two answers and a pause where no parser state is printed', async () => {
     const { clock, sender, heard, say, wait } = await makeWire();
     const agreeing = sender.resync();

@@ -1,5 +1,8 @@
 import { describe, expect, it } from 'vitest';
 import { isDriverError } from '../../../../drivers/errors.ts';
+import { MemoryPort } from '../../../../drivers/link/memory.ts';
+import { GcodePositioner } from '../../../../drivers/positioner/gcode-positioner.ts';
+import { SimulatedClock } from '../../../../mocks/simulated-clock.ts';
 import { azimuth, codeOf, failureOf, makeReadyRig, makeRig } from '../../../support/positioner-rig.ts';
 
 const hold = 0x21;
@@ -177,13 +180,19 @@ describe('stop', () => {
   });
 
   it('says so when there is no link to be had', async () => {
-    const { clock, positioner } = makeRig();
+    const clock = new SimulatedClock();
+    const nobody = new MemoryPort(clock, 'memory://nobody').link();
+    const positioner = new GcodePositioner(nobody, clock, { axes: [azimuth] });
+    const failure = await failureOf(clock, positioner.stop());
+    expect(failure?.code).toBe('POSITIONER_STOP_UNCONFIRMED');
+    expect(isDriverError(failure?.cause, 'LINK_OPEN_FAILED')).toBe(true);
+  });
+
+  it('works after a close, and leaves the link closed', async () => {
+    const { clock, positioner } = await makeReadyRig();
     await clock.run(positioner.close());
-    const { positioner: other, controller } = await makeReadyRig();
-    expect(controller.moving).toBe(false);
-    await clock.run(other.close().then(() => positioner.close()));
-    const stopped = await clock.run(positioner.stop());
-    expect(stopped.position).toEqual({ azimuth: 0, elevation: 0 });
+    expect((await clock.run(positioner.stop())).position).toEqual({ azimuth: 0, elevation: 0 });
+    expect(await codeOf(clock, positioner.moveTo({ azimuth: 10 }))).toBe('POSITIONER_RESTARTED');
   });
 
   it('stops what was moving before we came, and then connects', async () => {
