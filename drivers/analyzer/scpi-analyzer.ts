@@ -13,6 +13,7 @@ import type {
   SParameter,
   SweepSetup,
 } from './analyzer.ts';
+import { KnownInstrument } from './known-instrument.ts';
 import { OperationQueue } from './operation-queue.ts';
 import { confirmUnchanged, readTraces, runSweeps } from './scpi-acquisition.ts';
 import { ScpiConversation, type TraceForm } from './scpi-conversation.ts';
@@ -20,7 +21,7 @@ import { fillTemplate, problemsOf, type ScpiDialect, type TemplateName } from '.
 import type { SessionOpening } from './scpi-resync.ts';
 import { ScpiSession } from './scpi-session.ts';
 import { applySetup, type InstrumentSweep, requireSetting } from './scpi-setup.ts';
-import { errorOf, isCurable } from './scpi-status.ts';
+import { explainSilence, isCurable, stillOutOfStep } from './scpi-status.ts';
 import { decodeIdentity } from './scpi-values.ts';
 import type { TrafficNote } from './scpi-wire.ts';
 import { requirePlausible } from './trace-checks.ts';
@@ -46,14 +47,12 @@ export class ScpiAnalyzer implements Analyzer {
   readonly #answerTimeoutMs: number;
   readonly #session: ScpiSession;
   readonly #operations = new OperationQueue();
+  readonly #known = new KnownInstrument();
   readonly #previous = new Map<SParameter, Float64Array>();
-  #identity: AnalyzerIdentity | undefined;
   #setup: SweepSetup | undefined;
   #sweep: InstrumentSweep | undefined;
   /** The instrument may have lost or changed the setup: it is sent again before the next sweep. */
   #doubtful = true;
-  /** A power cycle was seen that nobody has been told of. */
-  #powerCycled = false;
   /** Correction as it was at the last `prepare`; a power cycle may lose it in silence. */
   #correctionOn: boolean | undefined;
   #switchingOff: Promise<void> | undefined;
@@ -67,9 +66,7 @@ export class ScpiAnalyzer implements Analyzer {
       throw new DriverError(
         'ANALYZER_BAD_DIALECT',
         `dialect ${options.dialect.name}: ${problems.join('; ')}`,
-        {
-          dialect: options.dialect.name,
-        },
+        { dialect: options.dialect.name },
       );
     }
     this.#clock = clock;
@@ -93,7 +90,7 @@ export class ScpiAnalyzer implements Analyzer {
     return this.#operate(signal, async (talk, stop) => {
       if (!this.inStep) return (await this.#open(stop)).identity;
       const identity = await talk.askPlain('*IDN?', decodeIdentity);
-      this.#requireSame(identity);
+      this.#meet(identity, false);
       return identity;
     });
   }
@@ -106,7 +103,7 @@ export class ScpiAnalyzer implements Analyzer {
       this.#correctionOn = undefined;
       const sweep = await this.#applySetup(talk);
       // Whatever was lost before: everything is set anew, and the caller sees what there is.
-      this.#powerCycled = false;
+      this.#known.forgetPowerCycle();
       return sweep;
     });
   }
@@ -158,11 +155,13 @@ export class ScpiAnalyzer implements Analyzer {
     return this.#operate(signal, async (talk, stop) => {
       await this.#open(stop);
       if (this.#setup) await this.#applySetup(talk);
-      this.#tellOfPowerCycle();
+      this.#known.tellOfPowerCycle();
     });
   }
 
   async close(): Promise<void> {
+    // Switching off is the one thing that closing does not cut short; its caller hears how it went.
+    await Promise.allSettled([this.#switchingOff]);
     const reason = new DriverError('ANALYZER_INTERRUPTED', 'the analyzer was closed');
     this.#session.hurry(0, reason);
     this.#operations.interrupt(reason);
@@ -175,7 +174,7 @@ export class ScpiAnalyzer implements Analyzer {
     wanted: readonly SParameter[],
   ): Promise<Acquisition> {
     await this.#bringInStep(stop);
-    this.#tellOfPowerCycle();
+    this.#known.tellOfPowerCycle();
     const setup = this.#setup;
     const sweep = this.#doubtful || !this.#sweep ? await this.#applySetup(talk) : this.#sweep;
     if (!setup) throw new Error('defect: nothing is prepared');
@@ -226,9 +225,7 @@ export class ScpiAnalyzer implements Analyzer {
     this.#doubtful = true;
     try {
       const opening = await this.#session.resynchronize(stop, urgent);
-      // Switched on before the first meeting is no news.
-      if (this.#identity && opening.powerOn) this.#powerCycled = true;
-      this.#requireSame(opening.identity);
+      this.#meet(opening.identity, opening.powerOn);
       return opening;
     } catch (error) {
       this.#openingFailed = error;
@@ -236,24 +233,15 @@ export class ScpiAnalyzer implements Analyzer {
     }
   }
 
-  #requireSame(identity: AnalyzerIdentity): void {
-    const before = this.#identity;
-    this.#identity ??= identity;
-    if (!before) return;
-    for (const field of ['maker', 'model', 'serial'] as const) {
-      if (before[field] === identity[field]) continue;
-      throw new DriverError(
-        'ANALYZER_IDENTITY_CHANGED',
-        `another instrument answers: ${field} was '${before[field]}' and is '${identity[field]}'`,
-        { field, before: before[field], now: identity[field] },
-      );
+  #meet(identity: AnalyzerIdentity, powerOn: boolean): void {
+    try {
+      this.#known.meet(identity, powerOn);
+    } catch (error) {
+      // It answers in step, and is still not to be spoken to.
+      this.#session.distrust('another instrument answers');
+      this.#openingFailed = error;
+      throw error;
     }
-  }
-
-  #tellOfPowerCycle(cause?: unknown): void {
-    if (!this.#powerCycled) return;
-    this.#powerCycled = false;
-    throw new DriverError('ANALYZER_POWER_CYCLED', 'the instrument was switched off and on', {}, cause);
   }
 
   #operate<T>(
@@ -285,15 +273,14 @@ export class ScpiAnalyzer implements Analyzer {
     this.#doubtful = true;
     if (stop.aborted) return stop.reason;
     if (!(error instanceof DriverError)) return error;
-    if (error.code === 'ANALYZER_POWER_CYCLED') this.#powerCycled = false;
     // A closed link is reported at once; reopening it takes patience, which is the caller's.
     if (this.#session.standing.kind !== 'out-of-step' || error === this.#openingFailed) return error;
     try {
       const opening = await this.#open(stop);
-      this.#tellOfPowerCycle(error);
-      return explain(error, opening.errors);
+      this.#known.tellOfPowerCycle(error);
+      return explainSilence(error, opening.errors);
     } catch (second) {
-      return stop.aborted ? stop.reason : whichIsWorse(error, second);
+      return stop.aborted ? stop.reason : stillOutOfStep(error, second);
     }
   }
 
@@ -353,22 +340,4 @@ export class ScpiAnalyzer implements Analyzer {
 /** The grid was right when it was prepared and wrong after the sweep. */
 function wasChangedMeanwhile(error: unknown): boolean {
   return isDriverError(error, 'ANALYZER_SETTING_DIFFERS') && error.facts['afterSweep'] === true;
-}
-
-/** A query without answer was perhaps refused; then the error queue has the reason. */
-function explain(error: DriverError, entries: SessionOpening['errors']): DriverError {
-  if (error.code !== 'ANALYZER_NOT_ANSWERING') return error;
-  return errorOf(entries, `'${error.facts['message'] ?? 'a question'}' got no answer`, error) ?? error;
-}
-
-/** An operation failed and bringing the session back into step failed too: what the caller must know. */
-function whichIsWorse(first: DriverError, second: unknown): unknown {
-  if (isDriverError(second, 'ANALYZER_IDENTITY_CHANGED', 'ANALYZER_POWER_CYCLED')) return second;
-  const because = second instanceof Error ? second.message : String(second);
-  return new DriverError(
-    first.code,
-    `${first.message}; the session is still out of step: ${because}`,
-    { ...first.facts, inStep: false },
-    first,
-  );
 }

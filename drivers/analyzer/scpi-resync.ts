@@ -56,7 +56,7 @@ export async function proveStep(
   await wire.shout('');
   for (const message of options.urgent) await wire.shout(message);
   await clock.sleep(quietMs, signal);
-  wire.listen();
+  wire.attend('proving');
   const talk = new ProvingTalk(wire, options);
   let identity = await talk.firstIdentity();
   const strayLines = await talk.proveMarker(markers[0], linesAtMost);
@@ -69,6 +69,7 @@ export async function proveStep(
   if (wire.holdsRest) {
     throw new DriverError('ANALYZER_OUT_OF_STEP', 'the instrument says more than it is asked');
   }
+  wire.attend('strict');
   return { identity: decodeIdentity(identity), powerOn: (events & eventBits.powerOn) !== 0, errors };
 }
 
@@ -150,7 +151,6 @@ class ProvingTalk {
       expected: { kind: 'text', maxBytes: lineMaxBytes },
       timeoutMs: answerTimeoutMs,
       signal,
-      keepRest: true,
     });
     return answer?.kind === 'text' ? answer.text : '';
   }

@@ -25,8 +25,6 @@ export interface SessionOptions {
 export interface AskOptions {
   signal?: AbortSignal | undefined;
   timeoutMs?: number;
-  /** Ahead of what waits, though never ahead of what is being answered. */
-  urgent?: boolean;
 }
 
 /** Longest line that is no trace: identities and error texts stay far below. */
@@ -155,8 +153,7 @@ export class ScpiSession {
       const release = (): void => options.signal?.removeEventListener('abort', onAbort);
       const waiting: Waiting = { exchange, resolve, reject, release };
       options.signal?.addEventListener('abort', onAbort, { once: true });
-      if (options.urgent) this.#waiting.unshift(waiting);
-      else this.#waiting.push(waiting);
+      this.#waiting.push(waiting);
       this.#pump();
     });
   }

@@ -77,3 +77,23 @@ export function errorOf(
   const message = `${during}: the instrument reports ${listEntries(entries)}`;
   return new DriverError(driverCodeOf(worst.code), message, facts, cause);
 }
+
+/** A query without answer was perhaps refused: then the error queue, read afterwards, has the reason. */
+export function explainSilence(error: DriverError, entries: readonly ScpiErrorEntry[]): DriverError {
+  if (error.code !== 'ANALYZER_NOT_ANSWERING') return error;
+  return errorOf(entries, `'${error.facts['message'] ?? 'a question'}' got no answer`, error) ?? error;
+}
+
+/** An operation failed, and so did bringing the session back into step: what the caller must know. */
+export function stillOutOfStep(first: DriverError, second: unknown): unknown {
+  if (second instanceof DriverError) {
+    if (second.code === 'ANALYZER_IDENTITY_CHANGED' || second.code === 'ANALYZER_POWER_CYCLED') return second;
+  }
+  const because = second instanceof Error ? second.message : String(second);
+  return new DriverError(
+    first.code,
+    `${first.message}; the session is still out of step: ${because}`,
+    { ...first.facts, inStep: false },
+    first,
+  );
+}

@@ -30,12 +30,18 @@ export interface Exchange {
   /** Silence longer than this ends the wait; each byte that comes extends it. */
   timeoutMs: number;
   signal?: AbortSignal | undefined;
-  /** While step is being proven: more lines than one may come, and what follows is kept for the next read. */
-  keepRest?: boolean;
 }
 
-/** However slowly bytes trickle in, an answer is not waited for longer than at this rate. */
+/** However slowly bytes trickle in, an answer is not waited for longer than this many silences … */
+const silencesAtMost = 3;
+/** … and the time its largest size takes at this rate. */
 const slowestBytesPerMs = 10;
+
+/**
+ * What becomes of bytes that no question is waiting for. `deaf`: thrown away (just opened); `proving`:
+ * kept for the next read (lines of before may still come); `strict`: a reason for doubt.
+ */
+type Attention = 'deaf' | 'proving' | 'strict';
 
 interface Pending {
   exchange: Exchange;
@@ -54,7 +60,7 @@ export class ScpiWire {
   readonly #events: WireEvents;
   #pending: Pending | undefined;
   #kept = new Uint8Array(0);
-  #deaf = false;
+  #attention: Attention = 'deaf';
 
   constructor(link: Link, clock: Clock, events: WireEvents) {
     this.#link = link;
@@ -64,24 +70,25 @@ export class ScpiWire {
     link.closed$.subscribe((news) => this.#onClosed(news));
   }
 
-  /** Lines were kept that no exchange has taken. */
+  /** Bytes were kept that no exchange has taken. */
   get holdsRest(): boolean {
-    return this.#kept.length > 0;
+    return !this.#kept.every(isSilence);
   }
 
   get isOpen(): boolean {
     return this.#link.isOpen;
   }
 
-  /** Opens, throws what the link throws. What comes before `listen` is thrown away. */
+  /** Opens, throws what the link throws. What comes before `attend` is thrown away. */
   async open(signal?: AbortSignal): Promise<void> {
     this.#kept = new Uint8Array(0);
-    this.#deaf = true;
+    this.#attention = 'deaf';
     await this.#link.open(signal);
   }
 
-  listen(): void {
-    this.#deaf = false;
+  attend(attention: 'proving' | 'strict'): void {
+    this.#attention = attention;
+    if (attention === 'strict') this.#kept = new Uint8Array(0);
   }
 
   close(): Promise<void> {
@@ -122,7 +129,7 @@ export class ScpiWire {
         exchange,
         reader: expected && new ScpiReader(expected),
         dueMs: nowMs + timeoutMs,
-        latestMs: nowMs + timeoutMs + (expected?.maxBytes ?? 0) / slowestBytesPerMs,
+        latestMs: nowMs + silencesAtMost * timeoutMs + (expected?.maxBytes ?? 0) / slowestBytesPerMs,
         cancelTimer: () => {},
         release: () => signal?.removeEventListener('abort', onAbort),
         resolve,
@@ -162,17 +169,18 @@ export class ScpiWire {
 
   #receive(bytes: Uint8Array): void {
     this.#events.onTraffic?.({ direction: 'received', bytes, monotonicMs: this.#clock.monotonicMs() });
-    if (!this.#deaf) this.#take(bytes);
+    if (this.#attention !== 'deaf') this.#take(bytes);
   }
 
   #take(bytes: Uint8Array): void {
     const pending = this.#pending;
-    if (!pending?.reader) {
-      if (!bytes.every(isSilence)) this.#events.onDoubt(`bytes came that nobody asked for (${hexOf(bytes)})`);
-      return;
-    }
+    if (pending?.reader) this.#takeAnswer(pending, pending.reader, bytes);
+    else this.#takeUnasked(bytes);
+  }
+
+  #takeAnswer(pending: Pending, reader: ScpiReader, bytes: Uint8Array): void {
     pending.dueMs = Math.min(this.#clock.monotonicMs() + pending.exchange.timeoutMs, pending.latestMs);
-    const news = pending.reader.take(bytes);
+    const news = reader.take(bytes);
     if (news.kind === 'more') return;
     if (news.kind === 'unreadable') {
       const facts = { ...this.#factsOf(pending), firstBytesHex: news.firstBytesHex };
@@ -188,10 +196,17 @@ export class ScpiWire {
     this.#settle(pending, { answer });
   }
 
+  #takeUnasked(bytes: Uint8Array): void {
+    if (this.#attention === 'proving') this.#kept = Buffer.concat([this.#kept, bytes]);
+    else if (!bytes.every(isSilence)) {
+      this.#events.onDoubt(`bytes came that nobody asked for (${hexOf(bytes)})`);
+    }
+  }
+
   /** What follows an answer in the same bytes: silence is well; more than that, and which is the answer? */
   #takeRest(pending: Pending, rest: Uint8Array): void {
     if (rest.every(isSilence)) return;
-    if (pending.exchange.keepRest) {
+    if (this.#attention === 'proving') {
       this.#kept = Uint8Array.from(rest);
       return;
     }
