@@ -1,17 +1,18 @@
 // The simulated motion controller of the family that reports in angle brackets: states, real-time bytes,
 // holds, alarms and resets, over the motion and the line runner. Its behaviour is taken from recordings of
 // real controllers; its parser and planner are its own, so that a driver cannot be right by sharing a mistake.
-import { type Observable, Subject } from 'rxjs';
+import type { Observable } from 'rxjs';
 import type { Clock } from '../../drivers/clock.ts';
 import type { Link } from '../../drivers/link/link.ts';
 import type { Pose } from '../scene/pose.ts';
 import { type ControllerState, type LineHost, LineRunner } from './line-runner.ts';
 import type { Mechanics } from './mechanics.ts';
 import { Motion } from './motion.ts';
+import { ReportDesk } from './report-desk.ts';
 import { SerialSide, usualMsPerByte } from './serial-side.ts';
 import { Settings, stageSettings } from './settings.ts';
-import { type ReportFacts, StatusReporter } from './status-report.ts';
 import { type AxisLetter, axisLetters, type ControllerTraits, type Edition, traitsOf } from './traits.ts';
+import { Voice } from './voice.ts';
 
 export interface ControllerOptions {
   edition?: Edition;
@@ -30,8 +31,6 @@ export interface ControllerOptions {
 
 /** How long a soft reset takes until the banner. */
 const restartMs = 25;
-/** From a status request to the report's first byte. */
-const noticeMs = 1;
 /** From the last line to the first pulse: in between the state is still idle. */
 const startMs = 5;
 const lockRemark = "[MSG:'$H'|'$X' to unlock]";
@@ -45,26 +44,20 @@ export class RealtimeStatusController {
   readonly #serial: SerialSide;
   readonly #motion: Motion;
   readonly #runner: LineRunner;
-  readonly #reporter: StatusReporter;
+  readonly #voice: Voice;
+  readonly #desk: ReportDesk;
   readonly #onConnect: 'goes-on' | 'restarts';
   readonly #bootMs: number;
   readonly #coastMs: number;
-  readonly #answered = new Subject<number>();
   #state: ControllerState = 'Idle';
   #alarm = 0;
   #deaf: Deafness | undefined = 'boot';
   #epoch = 0;
-  #reportWanted = false;
   #resetWanted = false;
   #isCancelling = false;
   #isDoorOpen = false;
   #isHomed = false;
   #heldSinceMs = 0;
-  #reportsThemselvesMs = 0;
-  #answers = 0;
-  #answersToLose = 0;
-  #answersToDelay: { count: number; ms: number } = { count: 0, ms: 0 };
-  #reportsToDamage: { count: number; damage: (text: string) => string } = { count: 0, damage: (t) => t };
 
   constructor(clock: Clock, options: ControllerOptions = {}) {
     const edition = options.edition ?? 'classic';
@@ -77,13 +70,20 @@ export class RealtimeStatusController {
     this.#onConnect = options.onConnect ?? 'goes-on';
     this.#bootMs = options.bootMs ?? restartMs;
     this.#coastMs = options.coastMs ?? 20;
-    this.#reporter = new StatusReporter(edition === 'extended');
     this.#serial = new SerialSide(clock, options.wireMsPerByte ?? usualMsPerByte, (b) => this.#take(b));
+    this.#voice = new Voice(clock, this.#serial);
     this.#motion = new Motion(clock, this.#settings, this.#traits, options.mechanics ?? {}, {
       ended: () => this.#motionEnded(),
       struck: () => this.#limitStruck(),
     });
     this.#runner = new LineRunner(clock, this.#traits, this.#settings, this.#motion, this.#lineHost());
+    const parts = { motion: this.#motion, runner: this.#runner, voice: this.#voice };
+    this.#desk = new ReportDesk(clock, this.#traits, this.#settings, parts, {
+      state: () => this.#state,
+      alarm: () => this.#alarm,
+      isDoorOpen: () => this.#isDoorOpen,
+      later: (ms, act) => this.#later(ms, act),
+    });
     this.#powerUp();
   }
 
@@ -96,7 +96,7 @@ export class RealtimeStatusController {
 
   /** Counts every `ok` and `error` given, lost ones included. */
   get answered$(): Observable<number> {
-    return this.#answered;
+    return this.#voice.answered$;
   }
 
   get state(): ControllerState {
@@ -159,15 +159,15 @@ export class RealtimeStatusController {
 
   /** The next answers never reach the wire. */
   loseAnswers(count: number): void {
-    this.#answersToLose += count;
+    this.#voice.loseAnswers(count);
   }
 
   delayAnswers(count: number, ms: number): void {
-    this.#answersToDelay = { count, ms };
+    this.#voice.delayAnswers(count, ms);
   }
 
   damageReports(count: number, damage: (text: string) => string): void {
-    this.#reportsToDamage = { count, damage };
+    this.#voice.damageReports(count, damage);
   }
 
   // Bytes.
@@ -190,7 +190,7 @@ export class RealtimeStatusController {
 
   #realtimeAct(byte: number): (() => void) | undefined {
     const extended = this.#traits.hasExtendedBytes;
-    if (byte === 0x3f || (extended && byte === 0x80)) return () => this.#wantReport();
+    if (byte === 0x3f || (extended && byte === 0x80)) return () => this.#desk.want();
     if (byte === 0x7e || (extended && byte === 0x81)) return () => this.#cycleStart();
     if (byte === 0x21 || (extended && byte === 0x82)) return () => this.#feedHold();
     if (byte === 0x84) return () => this.#doorOpened();
@@ -198,9 +198,9 @@ export class RealtimeStatusController {
     if (byte >= 0x90 && byte <= 0x97) return () => this.#override(byte);
     if (!extended) return undefined;
     if (byte === 0x19) return () => this.#stop();
-    if (byte === 0x83) return () => this.#say(this.#runner.reader.modeLine());
-    if (byte === 0x87) return () => this.#say(this.#fullReport());
-    if (byte === 0x8c) return () => this.#toggleOwnReports();
+    if (byte === 0x83) return () => this.#voice.say(this.#runner.reader.modeLine());
+    if (byte === 0x87) return () => this.#desk.giveFull();
+    if (byte === 0x8c) return () => this.#desk.toggleByItself();
     return undefined;
   }
 
@@ -211,7 +211,7 @@ export class RealtimeStatusController {
     else if (byte <= 0x94) {
       planner.feedFactor = Math.min(2, Math.max(0.1, planner.feedFactor + steps[byte]!));
     } else planner.rapidFactor = byte === 0x95 ? 1 : byte === 0x96 ? 0.5 : 0.25;
-    this.#reporter.overridesChanged();
+    this.#desk.reporter.overridesChanged();
     this.#motion.replan();
   }
 
@@ -241,7 +241,7 @@ export class RealtimeStatusController {
     const isReady = this.#state === 'Hold' || (this.#state === 'Door' && !this.#isDoorOpen);
     if (!isReady || this.#motion.isSlowing) return;
     this.#state = 'Idle';
-    if (this.#traits.remarksResume) this.#say('[MSG:]');
+    if (this.#traits.remarksResume) this.#voice.say('[MSG:]');
     this.#startQueue('Run');
     this.#runner.prolong(this.#clock.monotonicMs() - this.#heldSinceMs);
     this.#runner.poke();
@@ -255,7 +255,7 @@ export class RealtimeStatusController {
 
   /** The gentle stop of the extended edition: slow down, forget the queue, no alarm. */
   #stop(): void {
-    this.#say('[MSG:Stop]');
+    this.#voice.say('[MSG:Stop]');
     if (this.#state === 'Run' || this.#state === 'Jog' || this.#state === 'Hold') this.#stopAndForget();
   }
 
@@ -272,7 +272,7 @@ export class RealtimeStatusController {
 
   #doorOpened(): void {
     if (this.#state === 'Alarm' || this.#state === 'Sleep' || this.#state === 'Door') return;
-    this.#say('[MSG:Check Door]');
+    this.#voice.say('[MSG:Check Door]');
     if (this.#state === 'Home') {
       this.#abort(7);
       return;
@@ -315,7 +315,7 @@ export class RealtimeStatusController {
     this.#later(cycle.endMs - this.#clock.monotonicMs(), () => {
       if (cycle.alarm !== undefined) return this.#abort(cycle.alarm);
       cycle.counter();
-      if (this.#reportWanted) this.#giveReport();
+      this.#desk.giveWanted();
       this.#state = 'Idle';
       this.#isHomed = true;
       this.#runner.syncPosition();
@@ -354,7 +354,7 @@ export class RealtimeStatusController {
     this.#motion.stopDead(this.#coastMs);
     this.#enterAlarm(alarm);
     this.#later(this.#traits.alarmSilenceMs, () => {
-      this.#say('[MSG:Reset to continue]');
+      this.#voice.say('[MSG:Reset to continue]');
       this.#deaf = 'critical';
       if (this.#resetWanted) this.#softReset();
     });
@@ -366,9 +366,9 @@ export class RealtimeStatusController {
     this.#alarm = alarm;
     this.#deaf = 'silence';
     this.#isCancelling = false;
-    this.#reportWanted = false;
+    this.#desk.forget();
     this.#resetWanted = false;
-    this.#say(`ALARM:${alarm}`);
+    this.#voice.say(`ALARM:${alarm}`);
   }
 
   #outsideTravel(): void {
@@ -384,7 +384,7 @@ export class RealtimeStatusController {
   }
 
   #finishReset(): void {
-    if (this.#runner.isBusy && this.#traits.confirmsAbortedLine) this.#answer('ok');
+    if (this.#runner.isBusy && this.#traits.confirmsAbortedLine) this.#voice.answer('ok');
     this.#goDown('restart', restartMs);
   }
 
@@ -392,7 +392,7 @@ export class RealtimeStatusController {
     this.#motion.zeroCounter();
     this.#isHomed = false;
     this.#state = !this.#traits.hasExtendedBytes && this.#settings.value(22) !== 0 ? 'Alarm' : 'Idle';
-    if (this.#traits.hasExtendedBytes) this.#reportsThemselvesMs = this.#settings.value(481);
+    this.#desk.powerUp();
     this.#goDown('boot', this.#bootMs);
   }
 
@@ -400,7 +400,7 @@ export class RealtimeStatusController {
     this.#epoch += 1;
     this.#runner.reset();
     this.#deaf = deaf;
-    this.#reportWanted = false;
+    this.#desk.forget();
     this.#resetWanted = false;
     this.#isCancelling = false;
     this.#later(ms, () => this.#comeUp());
@@ -410,19 +410,18 @@ export class RealtimeStatusController {
     this.#deaf = undefined;
     this.#state = this.#state === 'Alarm' || this.#state === 'Sleep' ? 'Alarm' : 'Idle';
     if (this.#state === 'Idle') this.#alarm = 0;
-    this.#reporter.reset();
     this.#motion.planner.feedFactor = 1;
     this.#motion.planner.rapidFactor = 1;
     this.#runner.syncPosition();
-    this.#say('');
-    this.#say(this.#traits.banner);
+    this.#voice.say('');
+    this.#voice.say(this.#traits.banner);
     if (this.#mustHome) {
       this.#state = 'Alarm';
       this.#alarm = 11;
-      this.#say('ALARM:11');
-      this.#later(100, () => this.#say('[MSG:Homing cycle required]'));
-    } else if (this.#state === 'Alarm') this.#say(lockRemark);
-    this.#reportByItself();
+      this.#voice.say('ALARM:11');
+      this.#later(100, () => this.#voice.say('[MSG:Homing cycle required]'));
+    } else if (this.#state === 'Alarm') this.#voice.say(lockRemark);
+    this.#desk.comeUp();
     this.#runner.poke();
   }
 
@@ -431,94 +430,7 @@ export class RealtimeStatusController {
     return this.#traits.hasExtendedBytes && (this.#settings.value(22) & 4) !== 0 && !this.#isHomed;
   }
 
-  // Reports and answers.
-
-  #wantReport(): void {
-    if (this.#reportWanted) return;
-    this.#reportWanted = true;
-    if (this.#state === 'Home') return;
-    const nowMs = this.#clock.monotonicMs();
-    this.#later(this.#runner.nextLookMs(nowMs) - nowMs + noticeMs, () => {
-      if (this.#reportWanted && this.#state !== 'Home') this.#giveReport();
-    });
-  }
-
-  #giveReport(): void {
-    this.#reportWanted = false;
-    const text = this.#reporter.render(this.#reportFacts());
-    if (this.#reportsToDamage.count <= 0) {
-      this.#say(text);
-      return;
-    }
-    this.#reportsToDamage.count -= 1;
-    this.#say(this.#reportsToDamage.damage(text));
-  }
-
-  #fullReport(): string {
-    const facts = this.#reportFacts();
-    if (this.#state === 'Alarm') facts.state = `Alarm:${this.#alarm}`;
-    return this.#reporter.renderFull(
-      facts,
-      `G${54 + this.#runner.offsets.selected}`,
-      this.#reportsThemselvesMs,
-    );
-  }
-
-  #reportFacts(): ReportFacts {
-    const nowMs = this.#clock.monotonicMs();
-    const { feedFactor, rapidFactor, queued } = this.#motion.planner;
-    return {
-      state: this.#stateText(),
-      position: this.#motion.positionAt(nowMs),
-      offset: this.#runner.offsets.total,
-      feed: this.#motion.speedAt(nowMs) * 60,
-      freeBlocks: this.#traits.plannerBlocks - queued,
-      freeBytes: this.#runner.buffer.free - (this.#traits.hasExtendedBytes ? 1 : 0),
-      closedSwitches: this.#motion.closedSwitches(),
-      doorOpen: this.#isDoorOpen,
-      overrides: [Math.round(feedFactor * 100), Math.round(rapidFactor * 100), 100],
-      mask: this.#settings.value(10),
-      inches: this.#settings.value(13) !== 0,
-      busy: !['Idle', 'Alarm', 'Check', 'Sleep'].includes(this.#state),
-    };
-  }
-
-  #stateText(): string {
-    const { isSlowing } = this.#motion;
-    if (this.#state === 'Hold') return isSlowing ? 'Hold:1' : 'Hold:0';
-    if (this.#state !== 'Door') return this.#state;
-    return isSlowing ? 'Door:2' : this.#isDoorOpen ? 'Door:1' : 'Door:0';
-  }
-
-  #toggleOwnReports(): void {
-    this.#reportsThemselvesMs = this.#reportsThemselvesMs > 0 ? 0 : this.#settings.value(481);
-    this.#reportByItself();
-  }
-
-  #reportByItself(): void {
-    const everyMs = this.#reportsThemselvesMs;
-    if (everyMs <= 0) return;
-    this.#later(everyMs, () => {
-      if (this.#reportsThemselvesMs !== everyMs) return;
-      if (this.#state !== 'Home') this.#giveReport();
-      this.#reportByItself();
-    });
-  }
-
-  #answer(text: string): void {
-    this.#answers += 1;
-    const late = this.#answersToDelay;
-    if (this.#answersToLose > 0) this.#answersToLose -= 1;
-    else if (late.count > 0) {
-      late.count -= 1;
-      this.#clock.at(this.#clock.monotonicMs() + late.ms, () => this.#say(text));
-    } else this.#say(text);
-    this.#answered.next(this.#answers);
-  }
-
-  #say(text: string): void {
-    this.#serial.send(text);
-  }
+  // For the line runner.
 
   /** Like `Clock.at`, but forgotten when the device goes down in between. */
   #later(ms: number, act: () => void): void {
@@ -533,8 +445,8 @@ export class RealtimeStatusController {
       state: () => this.#state,
       canRead: () => this.#canRead,
       later: (ms, act) => this.#later(ms, act),
-      say: (text) => this.#say(text),
-      answer: (text) => this.#answer(text),
+      say: (text) => this.#voice.say(text),
+      answer: (text) => this.#voice.answer(text),
       startSoon: () => {
         if (this.#motion.planner.queued > 0 && this.#state === 'Idle') {
           this.#later(startMs, () => {
@@ -545,7 +457,7 @@ export class RealtimeStatusController {
       startNow: (kind) => this.#startQueue(kind),
       pause: () => this.#feedHold(),
       outsideTravel: () => this.#outsideTravel(),
-      offsetsChanged: () => this.#reporter.offsetChanged(),
+      offsetsChanged: () => this.#desk.reporter.offsetChanged(),
       perform: (kind) => this.#performDollar(kind),
       isHomed: () => this.#isHomed,
     };
@@ -556,13 +468,13 @@ export class RealtimeStatusController {
     if (kind === 'unlock') return this.#unlock();
     if (kind === 'sleep') {
       this.#later(0, () => {
-        this.#say('[MSG:Sleeping]');
+        this.#voice.say('[MSG:Sleeping]');
         this.#state = 'Sleep';
       });
       return undefined;
     }
     const leaves = this.#state === 'Check';
-    this.#say(leaves ? '[MSG:Disabled]' : '[MSG:Enabled]');
+    this.#voice.say(leaves ? '[MSG:Disabled]' : '[MSG:Enabled]');
     if (leaves) this.#later(0, () => this.#softReset());
     else this.#state = 'Check';
     return undefined;
@@ -572,7 +484,7 @@ export class RealtimeStatusController {
     if (this.#state !== 'Alarm') return undefined;
     if (this.#isDoorOpen) return 13;
     if (this.#mustHome) return 46;
-    this.#say('[MSG:Caution: Unlocked]');
+    this.#voice.say('[MSG:Caution: Unlocked]');
     this.#state = 'Idle';
     this.#alarm = 0;
     return undefined;
