@@ -82,6 +82,17 @@ describe('Planner', () => {
     expect(timeline.endMs).toBeCloseTo(3100, 6);
   });
 
+  it('counts a move as done when a hold comes to rest just behind its end', () => {
+    const { timeline, planner } = bench();
+    planner.add(feed(9.5), 0);
+    planner.add(feed(16), 0);
+    planner.start(0);
+    planner.hold(1000);
+    planner.advance(1500);
+    expect(timeline.placesAt(1500).counter[0]).toBeCloseTo(10, 9);
+    expect(planner.queued).toBe(1);
+  });
+
   it('slows down when an override is lowered in motion', () => {
     const { timeline, planner } = bench();
     planner.add(feed(30), 0);
