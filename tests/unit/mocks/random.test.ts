@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { stream } from '../../../mocks/random.ts';
+import { RandomStream, stream } from '../../../mocks/random.ts';
 
 function draw(count: number, next: () => number): number[] {
   return Array.from({ length: count }, next);
@@ -8,6 +8,28 @@ function draw(count: number, next: () => number): number[] {
 function mean(values: readonly number[]): number {
   return values.reduce((sum, value) => sum + value, 0) / values.length;
 }
+
+// The recipe of the generator, PractRand's sfc32, written out anew in exact integers.
+function* recipe(a: bigint, b: bigint, c: bigint): Generator<number> {
+  const word = (x: bigint): bigint => BigInt.asUintN(32, x);
+  for (let counter = 1n; ; counter++) {
+    const out = word(a + b + counter);
+    a = b ^ (b >> 9n);
+    b = word(c + (c << 3n));
+    c = word(word((c << 21n) | (c >> 11n)) + out);
+    yield Number(out);
+  }
+}
+
+describe('RandomStream', () => {
+  it('follows the published recipe after its first twelve outputs', () => {
+    const seeds: [number, number, number] = [0x12345678, 0x9abcdef0, 0xfedcba98];
+    const random = new RandomStream(seeds);
+    const expected = recipe(BigInt(seeds[0]), BigInt(seeds[1]), BigInt(seeds[2]));
+    for (let i = 0; i < 12; i++) expected.next();
+    for (let i = 0; i < 500; i++) expect(random.uint32()).toBe(expected.next().value);
+  });
+});
 
 describe('stream', () => {
   it('repeats itself for the same seed and name', () => {

@@ -257,6 +257,11 @@ describe('sweeps in time (rig)', () => {
     await visitor.send('INIT;*OPC?\n*IDN?\n');
     expect(await visitor.waitMs(1000)).toBe('');
     expect(await visitor.waitMs(20)).toBe(`1\r\n${idn}`);
+    await visitor.send('INIT;*OPC?\n');
+    await visitor.waitMs(100);
+    await visitor.send('*IDN?\n');
+    expect(await visitor.waitMs(800)).toBe('');
+    expect(await visitor.waitMs(200)).toBe(`1\r\n${idn}`);
     await visitor.send('INIT;*WAI;*IDN?\n');
     expect(await visitor.waitMs(1000)).toBe('');
     expect(await visitor.waitMs(20)).toBe(idn);
@@ -271,6 +276,29 @@ describe('sweeps in time (rig)', () => {
     await visitor.waitMs(100);
     expect(await visitor.ask('*ESR?')).toBe('1\r\n');
     expect(await visitor.ask('*ESR?')).toBe('0\r\n');
+  });
+
+  it('forgets *OPC on *CLS and *RST', async () => {
+    for (const forget of ['*CLS', '*RST']) {
+      const { visitor } = await bench();
+      await visitor.ask(`*CLS;:SWE:POIN 201;:INIT:CONT OFF;:INIT;*OPC;${forget}`);
+      await visitor.waitMs(1000);
+      expect(await visitor.ask('*ESR?')).toBe('0\r\n');
+    }
+  });
+
+  it('needs a pass for each driven port and tells so', async () => {
+    const { visitor, clock } = await bench();
+    await visitor.ask('INIT:CONT OFF;:BAND 1000;:SWE:POIN 100;:CALC:PAR:COUN 2;:CALC:PAR2:DEF S21');
+    expect(await visitor.ask('SWE:TIME?')).toBe('0.102\r\n');
+    expect(await visitor.ask('CALC:PAR2:DEF S22;:SWE:TIME?')).toBe('0.204\r\n');
+    const startMs = clock.monotonicMs();
+    let endMs = 0;
+    visitor.link.received$.subscribe(() => {
+      endMs = clock.monotonicMs();
+    });
+    await visitor.ask('INIT;*OPC?', 1000);
+    expect(endMs - startMs).toBeCloseTo(204, 6);
   });
 
   it('answers *OPC? at once when nothing single runs', async () => {
@@ -468,6 +496,14 @@ describe('traces and data (rig)', () => {
     };
     await visitor.ask('INIT:CONT OFF;:SWE:POIN 1;:INIT;*OPC?', 100);
     expect(await visitor.ask('CALC:DATA? SDATA')).toBe('+9.91000000000E+37,+9.91000000000E+37\r\n');
+  });
+
+  it('has no data after a reset, even when nothing else has changed', async () => {
+    const { visitor } = await bench();
+    await visitor.ask('INIT:CONT OFF;:INIT;*OPC?', 1000);
+    expect(await visitor.ask('CALC:DATA? SDATA')).not.toBe('');
+    expect(await visitor.ask('*RST;:CALC:DATA? SDATA')).toBe('');
+    expect(await errors(visitor)).toEqual([-230]);
   });
 
   it('goes back to its preset on *RST and SYST:PRES: continuous, 201 points, text, output on', async () => {

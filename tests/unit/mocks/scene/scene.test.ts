@@ -121,6 +121,73 @@ describe('polarization', () => {
   });
 });
 
+describe('the two axes and the roll', () => {
+  // A half-wave dipole in its own frame: cos((π/2) sin e)/cos e at elevation e, field along its wire.
+  const halfWave = (e: number): number => Math.cos((Math.PI / 2) * Math.sin(e)) / Math.cos(e);
+  const antennas = { aut: { kind: 'half-wave-dipole' as const }, range: isotropic() };
+  const off = { azimuthDeg: 60, elevationDeg: 30, rollDeg: 0 };
+
+  it('with the turntable on the tilt, a position is a direction', () => {
+    const scene = between({ antennas, stacking: 'azimuth-over-elevation' });
+    const drop = levelDb(scene.s('S21', 868e6, 0, off)) - levelDb(scene.s('S21', 868e6, 0, ahead));
+    // −1.7609 dB at 30° (closed form).
+    expect(drop).toBeCloseTo(-1.7609, 3);
+  });
+
+  it('with the tilt on the turntable, the direction and the wire’s tilt follow from the turns', () => {
+    const scene = between({ antennas, stacking: 'elevation-over-azimuth' });
+    const drop = levelDb(scene.s('S21', 868e6, 0, off)) - levelDb(scene.s('S21', 868e6, 0, ahead));
+    // The wire leans 30° in the turned plane: sin e = cos 60°·sin 30°; a wave polarized upright meets the
+    // field of the wire under an angle whose cosine is cos 30°/cos e.
+    const e = Math.asin(0.5 * 0.5);
+    expect(drop).toBeCloseTo(20 * Math.log10((halfWave(e) * Math.cos(Math.PI / 6)) / Math.cos(e)), 9);
+  });
+
+  it('a line source seen from aside and above follows the direction cosine along the line', () => {
+    const wavelengthM = lightspeed / 868e6;
+    const aut = { kind: 'line-source' as const, lengthM: 3 * wavelengthM, gainDbi: 0 };
+    const scene = between({ antennas: { aut, range: isotropic() } });
+    const pose = { azimuthDeg: 30, elevationDeg: 60, rollDeg: 0 };
+    const drop = levelDb(scene.s('S21', 868e6, 0, pose)) - levelDb(scene.s('S21', 868e6, 0, ahead));
+    // u = π·3·sin 30°·cos 60° = 0.75π.
+    expect(drop).toBeCloseTo(20 * Math.log10(Math.sin(0.75 * Math.PI) / (0.75 * Math.PI)), 9);
+  });
+
+  it('rolls the range antenna’s pattern with it: up goes to the left as the AUT sees it', () => {
+    // A cardioid looking to its own left, which is right for the AUT; rolled by 90° it looks up.
+    const range = { kind: 'cardioid' as const, gainDbi: 0, rotateAzimuthDeg: 90 };
+    const echoAt = (departureElevationDeg: number): number => {
+      const echoes = [{ extraPathM: 0, levelDb: 60, departureElevationDeg }];
+      return levelDb(
+        between({ antennas: { aut: isotropic(), range }, echoes }).s('S21', 868e6, 0, {
+          ...ahead,
+          rollDeg: 90,
+        }),
+      );
+    };
+    // Field (1 + cos t)/2 at t = 30° and 150°; the direct wave is 60 dB below the echo at least in part.
+    const expected = 20 * Math.log10((1 + Math.cos(Math.PI / 6)) / (1 - Math.cos(Math.PI / 6)));
+    expect(Math.abs(echoAt(60) - echoAt(-60) - expected)).toBeLessThan(0.2);
+  });
+
+  it('adds the range antenna’s cross component across its co component', () => {
+    // Cross over co of 0.1 in phase: upright share cos r − 0.1 sin r.
+    const range = { ...isotropic(), crossPolarDb: 20 };
+    const scene = between({ antennas: { aut: isotropic(), range } });
+    const r = Math.PI / 6;
+    const drop =
+      levelDb(scene.s('S21', 868e6, 0, { ...ahead, rollDeg: 30 })) - levelDb(scene.s('S21', 868e6, 0, ahead));
+    expect(drop).toBeCloseTo(20 * Math.log10(Math.cos(r) - 0.1 * Math.sin(r)), 9);
+  });
+
+  it('loses in the antenna what its heat takes', () => {
+    const lossy = between({ antennas: { aut: { ...isotropic(), lossDb: 1.3 }, range: isotropic() } });
+    expect(
+      levelDb(lossy.s('S21', 868e6, 0, ahead)) - levelDb(between({}).s('S21', 868e6, 0, ahead)),
+    ).toBeCloseTo(-1.3, 9);
+  });
+});
+
 describe('echoes', () => {
   const band = Float64Array.from({ length: 2001 }, (_, i) => 800e6 + i * 100e3);
 
@@ -185,6 +252,40 @@ describe('echoes', () => {
       levelDb(between({ antennas }).s('S21', frequencyHz, 0, ahead));
     // Half-wave dipole at 45°: −4.0417 dB (cos(π/2 sin e)/cos e); spreading 1/√2; in phase.
     expect(ratio).toBeCloseTo(20 * Math.log10(1 + 10 ** (-4.0417 / 20) / Math.SQRT2), 3);
+  });
+
+  it('sees a bounce under its angle to a sloping line of sight, at either end', () => {
+    // 8 and 2 m high, 10 m apart: 8 m along the ground, the sight slopes by atan(6/8) = 36.87°, the bounce by
+    // atan(10/8) = 51.34°: 88.21° off the sight at the AUT, 14.47° at the range antenna; 12.806 m long.
+    const ground = { rangeAntennaM: 8, autM: 2, reflectionMagnitude: 1, reflectionPhaseDeg: 0 };
+    const dipole = { kind: 'half-wave-dipole' as const };
+    const bounceM = Math.hypot(8, 10);
+    const frequencyHz = (3 * lightspeed) / (bounceM - 10);
+    for (const [end, e] of [
+      ['aut', Math.atan2(10, 8) + Math.atan2(6, 8)],
+      ['range', Math.atan2(10, 8) - Math.atan2(6, 8)],
+    ] as const) {
+      const antennas = { aut: isotropic(), range: isotropic(), [end]: dipole };
+      const rise =
+        levelDb(between({ antennas, ground }).s('S21', frequencyHz, 0, ahead)) -
+        levelDb(between({ antennas }).s('S21', frequencyHz, 0, ahead));
+      const factor = Math.cos((Math.PI / 2) * Math.sin(e)) / Math.cos(e);
+      expect(rise).toBeCloseTo(20 * Math.log10(1 + (factor * 10) / bounceM), 6);
+    }
+  });
+
+  it('launches towards a wall with the range antenna’s pattern on that side', () => {
+    const frequencyHz = 868e6;
+    const lengthM = (Math.SQRT2 * lightspeed) / frequencyHz;
+    const walls = [{ side: 'left' as const, distanceM: 5, reflectionDb: -6 }];
+    const level = (rotateAzimuthDeg: number, withWall: boolean): number => {
+      const range = { kind: 'line-source' as const, lengthM, gainDbi: 0, rotateAzimuthDeg };
+      const scene = between({ antennas: { aut: isotropic(), range }, walls: withWall ? walls : [] });
+      return levelDb(scene.s('S21', frequencyHz, 0, ahead));
+    };
+    // The null at 45° lies on the wall; turned to its own right the antenna looks at the wall alone.
+    expect(level(0, true)).toBeCloseTo(level(0, false), 6);
+    expect(level(-45, true) - level(0, false)).toBeCloseTo(-6 - 3.0103, 3);
   });
 
   it('lets a wall be seen from the side where it stands', () => {
