@@ -2,7 +2,7 @@
 // probes, refuses what moves or waits, reads identity and settings. Resets nothing that might be moving and
 // unlocks nothing: that is for stop() and home().
 import { DriverError, isDriverError } from '../errors.ts';
-import { feedIn, type GcodeParts, lineWithinMs, pollMs, readPlaced, setModes } from './gcode-parts.ts';
+import { type GcodeParts, lineWithinMs, noteMemory, pollMs, readPlaced, setModes } from './gcode-parts.ts';
 import type { ControllerLine, StatusReport } from './gcode-reports.ts';
 import { urgentBytes } from './gcode-sender.ts';
 import { checkSettings, limitsFrom, missingSettings, settingsIn } from './gcode-settings.ts';
@@ -153,19 +153,6 @@ async function readSettings(parts: GcodeParts, letters: string, signal?: AbortSi
   checkSettings(settings, parts.axes, letters);
   parts.settings = settings;
   parts.reference.learn(letters, limitsFrom(settings, parts.axes, letters));
-}
-
-/** On a later connection: a controller without the feed we left in it has restarted meanwhile. */
-async function noteMemory(parts: GcodeParts, signal?: AbortSignal): Promise<void> {
-  if (!parts.memoryMark) return;
-  const lines = await parts.sender.line('$G', { withinMs: lineWithinMs, signal });
-  if (feedIn(lines) !== 0) return;
-  parts.reference.lose(
-    new DriverError('POSITIONER_RESTARTED', `${parts.link.name} restarted while it was not connected`, {
-      link: parts.link.name,
-    }),
-    true,
-  );
 }
 
 function dataIn(lines: readonly ControllerLine[], key: string): string | undefined {

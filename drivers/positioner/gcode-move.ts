@@ -120,6 +120,21 @@ export async function readBack(parts: GcodeParts, target: Position, signal: Abor
   }
 }
 
+/**
+ * A wrong place may come from an unseen restart, and the stop that follows wipes the proof: at rest the
+ * controller's memory is asked for (throws POSITIONER_RESTARTED); in motion there is no time to, and the
+ * coordinates count as lost.
+ */
+export async function lookIntoWrongPlace(
+  parts: GcodeParts,
+  error: unknown,
+  signal: AbortSignal,
+): Promise<void> {
+  if (!isDriverError(error, 'POSITIONER_WRONG_PLACE')) return;
+  if (error.facts['state'] === 'Idle' && parts.memoryMark) await resyncAndCheckMemory(parts, signal);
+  else parts.reference.lose(error, true);
+}
+
 function isAt(axis: AxisSetup, target: Position, position: Position): boolean {
   const targetDeg = target[axis.name];
   if (targetDeg === undefined) return true;

@@ -1,10 +1,10 @@
 // What the procedures of the positioner (connect, home, move, stop) work with, and the small steps they share:
 // a report with a position, waiting for rest, the memory mark that betrays an unseen restart.
 import type { Clock } from '../clock.ts';
-import { DriverError } from '../errors.ts';
+import { DriverError, isDriverError } from '../errors.ts';
 import type { Link } from '../link/link.ts';
 import type { GcodeReference, Placed } from './gcode-reference.ts';
-import { type ControllerLine, feedInParserState, isHeld, isMoving } from './gcode-reports.ts';
+import { type ControllerLine, isHeld, isMoving, planeInParserState } from './gcode-reports.ts';
 import { alarmError, type GcodeSender } from './gcode-sender.ts';
 import type { Settings } from './gcode-settings.ts';
 import type { AxisSetup, Position } from './positioner.ts';
@@ -18,7 +18,7 @@ export interface GcodeParts {
   reference: GcodeReference;
   /** As read at connection; empty before. */
   settings: Settings;
-  /** The controller prints its feed in the parser state, so that a lost memory can be noticed. */
+  /** The controller remembers the plane we set and prints it, so that a lost memory can be noticed. */
   memoryMark: boolean;
 }
 
@@ -68,7 +68,7 @@ export async function awaitRest(parts: GcodeParts, signal?: AbortSignal): Promis
         { state: report.stateText },
       );
     }
-    if (report.state === 'Idle') return placed;
+    if (report.state === 'Idle' && !parts.reference.suspectsRestart) return placed;
     await parts.clock.sleep(pollMs, signal);
   }
 }
@@ -94,31 +94,59 @@ export function brakingMs(parts: GcodeParts): number {
   return Math.max(0, ...seconds) * 1000;
 }
 
+/** A plane that no controller starts in and no straight move asks for. */
+const markPlane = 18;
+
 /**
- * Modes, and a feed as the memory mark: it stands in the parser state until the controller restarts. Motion
- * lines carry their own modes and feed; this one only has to be sent after every restart or reset.
+ * Modes, and a plane as the memory mark: it stands in the parser state until the controller restarts, since
+ * motion lines, which carry their own modes, never name one. To be sent after every restart or reset.
  */
 export async function setModes(parts: GcodeParts, signal?: AbortSignal): Promise<void> {
-  await parts.sender.line('G21 G90 G94 F60', { withinMs: lineWithinMs, signal });
+  await parts.sender.line(`G${markPlane} G21 G90 G94`, { withinMs: lineWithinMs, signal });
   const lines = await parts.sender.line('$G', { withinMs: lineWithinMs, signal });
-  parts.memoryMark = feedIn(lines) !== undefined && feedIn(lines) !== 0;
+  parts.memoryMark = planeIn(lines) === markPlane;
 }
 
-/** The feed in a printed parser state; undefined when none was printed. */
-export function feedIn(lines: readonly ControllerLine[]): number | undefined {
+function planeIn(lines: readonly ControllerLine[]): number | undefined {
   for (const line of lines) {
-    if (line.kind === 'data' && line.key === 'GC') return feedInParserState(line.value);
+    if (line.kind === 'data' && line.key === 'GC') return planeInParserState(line.value);
   }
   return undefined;
 }
 
-/** After a lost answer: agrees with the controller again and throws POSITIONER_RESTARTED if its memory is gone. */
+/** Throws POSITIONER_RESTARTED if the controller's memory is gone: its banner, and what it did to the position, may go unseen. */
+export async function checkMemory(parts: GcodeParts, signal?: AbortSignal): Promise<void> {
+  if (!parts.memoryMark) return;
+  try {
+    demandMark(parts, await parts.sender.line('$G', { withinMs: lineWithinMs, signal }));
+  } catch (error) {
+    if (!isDriverError(error, 'POSITIONER_NOT_ANSWERING')) throw error;
+    await resyncAndCheckMemory(parts, signal);
+  }
+}
+
+/** As `checkMemory`, where a restart is no failure: the reference remembers it for the next move. */
+export async function noteMemory(parts: GcodeParts, signal?: AbortSignal): Promise<void> {
+  try {
+    await checkMemory(parts, signal);
+  } catch (error) {
+    if (!isDriverError(error, 'POSITIONER_RESTARTED')) throw error;
+  }
+}
+
+/** After a lost answer: agrees with the controller again, and checks its memory. */
 export async function resyncAndCheckMemory(parts: GcodeParts, signal?: AbortSignal): Promise<void> {
   const lines = await parts.sender.resync(signal);
-  if (!parts.memoryMark || feedIn(lines) !== 0) return;
+  if (parts.memoryMark) demandMark(parts, lines);
+}
+
+function demandMark(parts: GcodeParts, lines: readonly ControllerLine[]): void {
+  const plane = planeIn(lines);
+  // No plane at all is a damaged line, and proves nothing.
+  if (plane === undefined || plane === markPlane) return;
   const error = new DriverError(
     'POSITIONER_RESTARTED',
-    `${parts.link.name} restarted unseen: it has forgotten its feed`,
+    `${parts.link.name} restarted unseen: it has forgotten its modes`,
     { link: parts.link.name },
   );
   parts.reference.lose(error, true);

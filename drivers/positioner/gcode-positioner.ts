@@ -7,9 +7,9 @@ import { DriverError, isDriverError } from '../errors.ts';
 import type { Link } from '../link/link.ts';
 import { connect } from './gcode-connect.ts';
 import { homeAxes } from './gcode-home.ts';
-import { driveLeg, readBack } from './gcode-move.ts';
-import { awaitRest, type GcodeParts, readPlaced } from './gcode-parts.ts';
-import { GcodeReference } from './gcode-reference.ts';
+import { driveLeg, lookIntoWrongPlace, readBack } from './gcode-move.ts';
+import { awaitRest, checkMemory, type GcodeParts, readPlaced } from './gcode-parts.ts';
+import { GcodeReference, type Placed } from './gcode-reference.ts';
 import { isMoving } from './gcode-reports.ts';
 import { GcodeSender, type OnTraffic } from './gcode-sender.ts';
 import { stopAxes, type Underway } from './gcode-stop.ts';
@@ -108,11 +108,11 @@ export class GcodePositioner implements Positioner {
     return this.#exclusive(options.signal, async (signal) => {
       this.#parts.reference.check();
       const { position } = await awaitRest(this.#parts, signal);
+      await checkMemory(this.#parts, signal);
       const legs = planLegs(this.axes, this.#stands(position), target, options.throughApproach);
       const arrivedDeg = this.#arrivedDeg;
       this.#arrivedDeg = {};
-      for (const leg of legs) await driveLeg(this.#parts, leg, () => this.#moves('move'), signal);
-      const placed = await readBack(this.#parts, target, signal);
+      const placed = await this.#drive(legs, target, signal);
       this.#atRest();
       await this.#parts.clock.sleep(this.#settleMs(target), signal);
       this.#arrivedDeg = { ...arrivedDeg, ...target };
@@ -140,6 +140,18 @@ export class GcodePositioner implements Positioner {
   async close(): Promise<void> {
     this.#fail(new DriverError('LINK_CLOSED', `${this.#parts.link.name} was closed by us`, {}));
     await this.#parts.link.close();
+  }
+
+  async #drive(legs: readonly Position[], target: Position, signal: AbortSignal): Promise<Placed> {
+    try {
+      for (const leg of legs) await driveLeg(this.#parts, leg, () => this.#moves('move'), signal);
+      const placed = await readBack(this.#parts, target, signal);
+      await checkMemory(this.#parts, signal);
+      return placed;
+    } catch (error) {
+      await lookIntoWrongPlace(this.#parts, error, signal);
+      throw error;
+    }
   }
 
   async #stop(): Promise<StopReport> {

@@ -153,6 +153,11 @@ export class GcodeReference {
     return this.#lostBecause?.code === 'POSITIONER_RESTARTED';
   }
 
+  /** The latest report shows a fall to zero that a second one has yet to confirm. */
+  get suspectsRestart(): boolean {
+    return this.#jumps > 0;
+  }
+
   /**
    * Whether an axis without a switch may be believed at `position`: it never was trusted before (the zero at
    * connection is the axis's zero), or its counter went on without a break, or it stands where it last stood.

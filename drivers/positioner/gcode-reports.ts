@@ -138,10 +138,10 @@ export function isHeld(report: StatusReport): boolean {
 }
 
 /**
- * The feed word in the value of a parser-state line (`GC:`). The driver leaves a feed behind; after any reset
- * it is 0, which betrays a restart whose banner was lost on the wire. Undefined when there is no such word.
+ * The working plane (17, 18 or 19) in the value of a parser-state line (`GC:`); undefined when there is none.
+ * Straight moves do not care for it, and after any reset it is 17: see `setModes`.
  */
-export function feedInParserState(value: string): number | undefined {
-  const feed = /(?:^|\s)F(\d+(?:\.\d*)?)(?:\s|$)/.exec(value);
-  return feed ? Number(feed[1]) : undefined;
+export function planeInParserState(value: string): number | undefined {
+  const plane = /(?:^|\s)G(17|18|19)(?:\s|$)/.exec(value);
+  return plane ? Number(plane[1]) : undefined;
 }

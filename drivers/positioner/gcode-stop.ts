@@ -4,7 +4,15 @@
 //   no hold in time, or nothing answered:    soft reset  ──►  …                               position doubtful
 //   at rest:  ?  ──►  two reports alike; no hold, which would lock an idle controller
 import { DriverError, isDriverError } from '../errors.ts';
-import { brakingMs, type GcodeParts, pollMs, readPlaced, samePlace, setModes } from './gcode-parts.ts';
+import {
+  brakingMs,
+  type GcodeParts,
+  noteMemory,
+  pollMs,
+  readPlaced,
+  samePlace,
+  setModes,
+} from './gcode-parts.ts';
 import type { Placed } from './gcode-reference.ts';
 import { isHeld, isMoving } from './gcode-reports.ts';
 import { urgentBytes } from './gcode-sender.ts';
@@ -62,13 +70,19 @@ async function comeToRest(
       parts.sender.urgent(urgentBytes.hold);
       mayMove = true;
     } else if (!isHeld(answer.report)) {
-      return confirm(parts, calledMs);
+      const report = await confirm(parts, calledMs);
+      // Without a reset of ours the mark must still be there.
+      if (answer.report.state === 'Idle') await whereAnswered(parts, noteMemory);
+      return report;
     }
   }
   const rest = await awaitHold(parts, brakingMs(parts) + holdGraceMs + graceMs);
   if (rest === undefined) return resetHard(parts, calledMs);
-  if (rest.report.state !== 'Alarm') await parts.sender.reset(bannerMs);
-  return confirm(parts, calledMs, rest);
+  if (rest.report.state === 'Alarm') return confirm(parts, calledMs, rest);
+  await parts.sender.reset(bannerMs);
+  const report = await confirm(parts, calledMs, rest);
+  await markMemoryAgain(parts);
+  return report;
 }
 
 async function firstReport(parts: GcodeParts): ReturnType<GcodeParts['sender']['askReport']> {
@@ -128,7 +142,6 @@ async function confirm(parts: GcodeParts, calledMs: number, rest?: Placed): Prom
     const now = await readPlaced(parts);
     const stands = !isMoving(now.report) && samePlace(parts.axes, before.position, now.position);
     if (stands) {
-      if (now.report.state === 'Idle') await markMemoryAgain(parts);
       return { position: now.position, haltMs: (rest ?? before).monotonicMs - calledMs };
     }
     before = now;
@@ -139,10 +152,18 @@ async function confirm(parts: GcodeParts, calledMs: number, rest?: Placed): Prom
   });
 }
 
-/** The axes stand, whether or not this is answered; without the mark an unseen restart is merely found later. */
+/**
+ * After a reset of our own. The mark is gone with it, and with the mark the proof against a restart unseen just
+ * before: there only the fall of the position to zero is left.
+ */
 async function markMemoryAgain(parts: GcodeParts): Promise<void> {
+  if (parts.reference.last?.report.state === 'Idle') await whereAnswered(parts, setModes);
+}
+
+/** The axes stand, whether or not this is answered; without the mark an unseen restart is merely found later. */
+async function whereAnswered(parts: GcodeParts, act: (parts: GcodeParts) => Promise<void>): Promise<void> {
   try {
-    await setModes(parts);
+    await act(parts);
   } catch (error) {
     if (!isDriverError(error)) throw error;
     parts.memoryMark = false;

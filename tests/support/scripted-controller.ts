@@ -41,10 +41,13 @@ export class ScriptedController {
   /** Answers in place of the controller where it returns lines. */
   answerInstead: (line: string) => string[] | undefined = () => undefined;
   mute = false;
+  /** A restart happened whose banner nobody could hear. */
+  restartedUnseen = false;
   /** Takes no notice of holds. */
   ignoresHold = false;
   state: string;
   feed = 0;
+  plane = 17;
   readonly #clock: Clock;
   readonly #options: ScriptedOptions;
   readonly #axisCount: number;
@@ -60,6 +63,7 @@ export class ScriptedController {
   #deafUntilMs = 0;
   #reports = 0;
   #stalledAt: number[] | undefined;
+  #shaftOffset: number[] = [];
 
   constructor(clock: Clock, options: ScriptedOptions = {}) {
     this.#clock = clock;
@@ -88,6 +92,11 @@ export class ScriptedController {
     return this.#from.map((from, axis) => from + ((this.#to[axis] ?? from) - from) * share);
   }
 
+  /** Where the shafts truly are: a restart zeroes the counter, not them. */
+  get shaft(): number[] {
+    return this.position.map((at, axis) => at + (this.#shaftOffset[axis] ?? 0));
+  }
+
   get moving(): boolean {
     return this.#clock.monotonicMs() < this.#endMs;
   }
@@ -110,6 +119,10 @@ export class ScriptedController {
   /** The supply fails for a moment: everything is forgotten, the banner comes after `bootMs`. */
   powerCycle(bootMs = 30, junk = '', banner = true): void {
     this.#epoch += 1;
+    this.restartedUnseen ||= !banner;
+    this.#shaftOffset = this.shaft;
+    this.#stalledAt = undefined;
+    this.mute = false;
     this.#park(this.position.map(() => 0));
     this.#deafUntilMs = this.#clock.monotonicMs() + bootMs;
     this.#after(bootMs, () => {
@@ -117,6 +130,8 @@ export class ScriptedController {
       this.#text = '';
       this.#busy = false;
       this.feed = 0;
+      this.plane = 17;
+      this.plane = 17;
       this.state = 'Idle';
       if (junk) void this.#wire?.write(new TextEncoder().encode(junk));
       if (banner) this.say('', "Grbl 1.1h ['$' for help]");
@@ -195,6 +210,7 @@ export class ScriptedController {
     else if (line.startsWith('G4')) this.#dwell();
     else {
       this.feed = Number(/F([\d.]+)/.exec(line)?.[1] ?? this.feed);
+      this.plane = Number(/G(1[789])/.exec(line)?.[1] ?? this.plane);
       if (/\bG1\b/.test(line)) this.#start(line);
       this.#finish('ok');
     }
@@ -203,7 +219,7 @@ export class ScriptedController {
   #dollar(line: string): string[] {
     if (line === '$I')
       return [...(this.#options.identity ?? ['[VER:1.1h.20190830:]', '[OPT:V,15,128]']), 'ok'];
-    if (line === '$G') return [`[GC:G1 G54 G17 G21 G90 G94 M5 M9 T0 F${this.feed} S0]`, 'ok'];
+    if (line === '$G') return [`[GC:G1 G54 G${this.plane} G21 G90 G94 M5 M9 T0 F${this.feed} S0]`, 'ok'];
     if (line === '$$') return [...this.#settings(), 'ok'];
     if (line !== '$X') return ['error:3'];
     const locked = this.state === 'Alarm';
@@ -312,6 +328,7 @@ export class ScriptedController {
     this.#stalledAt = undefined;
     this.mute = false;
     this.feed = 0;
+    this.plane = 17;
     this.#inbox = [];
     this.#busy = false;
     this.#text = '';

@@ -3,10 +3,10 @@ import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
 import { alarmMeaning, refusalMeaning } from '../../../../drivers/positioner/gcode-meanings.ts';
 import {
-  feedInParserState,
   isHeld,
   isMoving,
   machinePosition,
+  planeInParserState,
   readLine,
   readReport,
 } from '../../../../drivers/positioner/gcode-reports.ts';
@@ -115,10 +115,11 @@ describe('states', () => {
     expect([isMoving(report), isHeld(report)]).toEqual([moving, held]);
   });
 
-  it('reads the feed of a parser state, not the one of another word', () => {
-    expect(feedInParserState('G0 G54 G17 G21 G90 G94 M5 M9 T0 F600 S0')).toBe(600);
-    expect(feedInParserState('G0 G54 M9 T0 F0 S0')).toBe(0);
-    expect(feedInParserState('G0 G54')).toBeUndefined();
+  it('reads the plane of a parser state, not another word', () => {
+    expect(planeInParserState('G0 G54 G17 G21 G90 G94 M5 M9 T0 F600 S0')).toBe(17);
+    expect(planeInParserState('G1 G54 G18 G21 G90 G94 G40 G49 G98 G50 M5 M9 T0 F1800 S0.')).toBe(18);
+    expect(planeInParserState('G0 G54')).toBeUndefined();
+    expect(planeInParserState('G0 G180')).toBeUndefined();
   });
 });
 

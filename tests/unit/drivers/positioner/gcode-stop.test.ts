@@ -47,7 +47,7 @@ describe('stop', () => {
     const after = controller.lines.length;
     await clock.run(clock.sleep(10_000));
     expect(controller.lines).toHaveLength(after);
-    expect(controller.lines.slice(-2)).toEqual(['G21 G90 G94 F60', '$G']);
+    expect(controller.lines.slice(-2)).toEqual(['G18 G21 G90 G94', '$G']);
   });
 
   it('right after the line left: the line never runs', async () => {
