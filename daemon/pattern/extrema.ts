@@ -6,7 +6,7 @@
 //          ╲    ╱    ╲    ╱                 rising:  keep the highest; a fall of the prominence
 //           ╲╱ null   ╲╱ null                        below it confirms a lobe
 import type { Cut } from './cut.ts';
-import { amplitudeRatio } from './decibels.ts';
+import { amplitudeRatio, lowestLevelDb } from './decibels.ts';
 import { angleOnFlankDeg, type Flank, flankOf } from './flank.ts';
 import { parabolaVertex } from './parabola.ts';
 import { finite, PatternError } from './pattern-error.ts';
@@ -14,6 +14,12 @@ import { largestLiftDb, type Peak } from './peak.ts';
 
 /** A lobe or null stands out by at least this much on both sides, unless the caller says otherwise. */
 export const usualProminenceDb = 1;
+
+/**
+ * And by this many times the noise's rms amplitude, where the noise is known: nearly six standard deviations of
+ * one sample's magnitude, when the largest and least of fifty samples lie four and a half apart.
+ */
+export const timesNoise = 4;
 
 export interface Extremum {
   kind: 'null' | 'lobe';
@@ -31,6 +37,8 @@ export interface Extrema {
   right: Extremum[];
   periodic: boolean;
   prominenceDb: number;
+  /** As it was handed in. */
+  noiseDb?: number;
 }
 
 export interface ExtremaOptions {
@@ -38,6 +46,8 @@ export interface ExtremaOptions {
   prominenceDb?: number;
   /** Levels at or below this are not told apart, in dB; everything counts unless given. */
   resolvedDb?: number;
+  /** Level of the noise's rms amplitude, in the unit of the cut, where it is known. */
+  noiseDb?: number;
 }
 
 /**
@@ -64,15 +74,15 @@ export function extremaOf(cut: Cut, peak: Peak, options: ExtremaOptions = {}): E
   }
   const along = (side: 'left' | 'right') => {
     const flank = flankOf(cut, peak.index, side);
-    return turnsAlong(heldAt(flank.levelDb, options.resolvedDb), prominenceDb).map((turn) =>
-      placed(flank, turn),
-    );
+    const held = heldAt(flank.levelDb, options.resolvedDb);
+    return turnsAlong(held, prominenceDb, options.noiseDb).map((turn) => placed(flank, turn));
   };
   const right = along('right');
   const left = cut.periodic
     ? right.map((found) => ({ ...found, offsetDeg: 360 - found.offsetDeg })).reverse()
     : along('left');
-  return { left, right, periodic: cut.periodic, prominenceDb };
+  const found = { left, right, periodic: cut.periodic, prominenceDb };
+  return options.noiseDb === undefined ? found : { ...found, noiseDb: options.noiseDb };
 }
 
 /** Where a row of levels turns: samples `first` to `last` share the extreme level. */
@@ -87,10 +97,13 @@ export interface Turn {
  *
  * @param levelDb levels in dB in order
  * @param prominenceDb smallest rise and fall in dB
+ * @param noiseDb level of the noise's rms amplitude: a rise or fall must also exceed it several times
  * @returns turns in order, a null first
  */
-export function turnsAlong(levelDb: Float64Array, prominenceDb: number): Turn[] {
+export function turnsAlong(levelDb: Float64Array, prominenceDb: number, noiseDb?: number): Turn[] {
   const turns: Turn[] = [];
+  const amplitude = (level: number) => amplitudeRatio(Math.max(lowestLevelDb, level - levelDb[0]!));
+  const margin = noiseDb === undefined ? 0 : timesNoise * amplitude(Math.min(noiseDb, levelDb[0]!));
   let kind: Turn['kind'] = 'null';
   let first = 0;
   let last = 0;
@@ -100,6 +113,7 @@ export function turnsAlong(levelDb: Float64Array, prominenceDb: number): Turn[] 
     if (further > 0) first = k;
     if (further >= 0) last = k;
     if (-further < prominenceDb) continue;
+    if (margin > 0 && Math.abs(amplitude(levelDb[k]!) - amplitude(levelDb[first]!)) < margin) continue;
     turns.push({ kind, first, last });
     kind = kind === 'null' ? 'lobe' : 'null';
     first = k;
@@ -143,7 +157,7 @@ function spot(
 function deepNull(x: [number, number, number], levelDb: [number, number, number]): { x: number; y: number } {
   const strongestDb = Math.max(...levelDb);
   const [before, lowest, after] = levelDb.map((level) =>
-    amplitudeRatio(Math.max(-400, level - strongestDb)),
+    amplitudeRatio(Math.max(lowestLevelDb, level - strongestDb)),
   ) as [number, number, number];
   const [left, right] = [x[1] - x[0], x[2] - x[1]];
   const unevenIfRight = Math.abs((before - lowest) / left - (lowest + after) / right);

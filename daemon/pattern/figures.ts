@@ -1,12 +1,13 @@
 // All figures of one cut at one frequency, under the keys that the figures document prints. The order of
 // the work: check, peak, half-power beam (twice: see beam-top.ts), nulls and lobes, ratios.
 import { beamTopDb } from './beam-top.ts';
-import { beamwidth } from './beamwidth.ts';
+import { type Beamwidth, beamwidth } from './beamwidth.ts';
 import { circularity } from './circularity.ts';
 import { type Cut, checkCut } from './cut.ts';
-import { extremaOf } from './extrema.ts';
-import { absentFigure, type Figure, valueFigure } from './figure.ts';
-import { floorBeside } from './floor.ts';
+import { cutNoiseDb } from './cut-noise.ts';
+import { type Extrema, extremaOf } from './extrema.ts';
+import { absentFigure, type Figure, type FigureAbsent, valueFigure } from './figure.ts';
+import { boundMarginDb, type Floor, floorBeside } from './floor.ts';
 import { frontToBack } from './front-to-back.ts';
 import { frontToRear } from './front-to-rear.ts';
 import { firstNullBeamwidth } from './nulls.ts';
@@ -68,10 +69,7 @@ export function cutFigures(cut: Cut, options: CutFigureOptions = {}): CutFigures
   const referenceDb = firstReading.kind === 'value' ? beamTopDb(cut, peak, firstReading) : peak.levelDb;
   const halfPower = beamwidth(cut, peak, { referenceDb });
   const tenDb = beamwidth(cut, peak, { dropDb: 10, referenceDb });
-  const extrema = extremaOf(cut, peak, {
-    resolvedDb: floor.resolvedDb,
-    ...(options.prominenceDb === undefined ? {} : { prominenceDb: options.prominenceDb }),
-  });
+  const extrema = extremaAboveNoise(cut, peak, firstReading, floor, options);
   const figures: CutFigures = {
     peakDeg: peakDirection(peak),
     halfPowerBeamwidthDeg: halfPower.kind === 'value' ? valueFigure(halfPower.value) : halfPower,
@@ -86,6 +84,22 @@ export function cutFigures(cut: Cut, options: CutFigureOptions = {}): CutFigures
     circularityDb: circularity(cut, floor),
   };
   return withGain(figures, options, (constantDb) => valueFigure(peak.levelDb + constantDb));
+}
+
+/** Lobes must stand out of the stated floor, and of the noise that the cut itself shows. */
+function extremaAboveNoise(
+  cut: Cut,
+  peak: Peak,
+  halfPower: Beamwidth | FigureAbsent,
+  floor: Floor,
+  options: CutFigureOptions,
+): Extrema {
+  const noiseDb = Math.max(floor.floorDb, cutNoiseDb(cut, peak, halfPower) ?? floor.floorDb);
+  return extremaOf(cut, peak, {
+    resolvedDb: Math.max(floor.resolvedDb, Math.min(noiseDb + boundMarginDb, peak.levelDb)),
+    noiseDb,
+    ...(options.prominenceDb === undefined ? {} : { prominenceDb: options.prominenceDb }),
+  });
 }
 
 function peakDirection(peak: Peak): Figure {

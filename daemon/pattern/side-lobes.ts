@@ -67,7 +67,7 @@ export function sideLobeLevelDb(extrema: Extrema, peak: Peak, floor: Floor): Fig
  */
 export function shoulderBeside(cut: Cut, peak: Peak, extrema: Extrema, side: Side): Shoulder | undefined {
   const toOffsetDeg = extrema[side][0]?.offsetDeg ?? (cut.periodic ? 180 : endOffsetDeg(cut, peak, side));
-  return shoulderOn(cut, peak, side, toOffsetDeg, extrema.prominenceDb);
+  return shoulderOn(cut, peak, side, toOffsetDeg, extrema.prominenceDb, extrema.noiseDb);
 }
 
 function endOffsetDeg(cut: Cut, peak: Peak, side: Side): number {

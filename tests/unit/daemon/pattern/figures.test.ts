@@ -118,9 +118,10 @@ describe('figures of a cut', () => {
       turn((deg) => 20 * Math.log10(Math.abs(Math.cos((deg * Math.PI) / 180 / 2)) + 0.05 + k * 1e-4)),
     );
     cutFigures(cuts[0]!);
-    const startMs = performance.now();
+    // Processor time, so that a busy machine does not fail it.
+    const start = process.cpuUsage();
     for (const cut of cuts) cutFigures(cut);
-    expect(performance.now() - startMs).toBeLessThan(1000);
+    expect(process.cpuUsage(start).user / 1000).toBeLessThan(1000);
   });
 });
 
