@@ -32,9 +32,8 @@ export async function runSweeps(
 ): Promise<SweepRun> {
   await judgeEvents(talk, await talk.readEvents(), 'between two sweeps', { mayBeStale: true });
   if (sweep.averages > 1) await talk.tell('averagingClear');
-  const starts = talk.dialect.oneStartRuns === 'whole-average' ? 1 : sweep.averages;
   const startedMs: number[] = [];
-  for (let start = 0; start < starts; start += 1) {
+  for (let start = 0; start < sweep.starts; start += 1) {
     startedMs.push(talk.clock.monotonicMs());
     await talk.tell('startSweep');
     await talk.tellPlain('*OPC');
@@ -58,7 +57,7 @@ async function awaitEnd(
 ): Promise<void> {
   const begunMs = startedMs.at(-1) ?? talk.clock.monotonicMs();
   const deadlineMs = begunMs + sweep.acquisitionMs * deadlineFactor + deadlineSlackMs;
-  const pause = pollPauses(talk, begunMs + sweep.sweepMs);
+  const pause = pollPauses(talk, begunMs + sweep.passMs * sweep.passesPerStart);
   for (;;) {
     await talk.sleep(pause());
     const leftMs = deadlineMs - talk.clock.monotonicMs();
@@ -87,10 +86,10 @@ async function sweepTimeout(
   allowedMs: number,
 ): Promise<DriverError> {
   await talk.tell('abort');
-  const facts = { allowedMs: Math.round(allowedMs), statedMs: sweep.sweepMs, averages: sweep.averages };
+  const facts = { allowedMs: Math.round(allowedMs), statedMs: sweep.acquisitionMs, averages: sweep.averages };
   return new DriverError(
     'ANALYZER_SWEEP_TIMEOUT',
-    `a sweep stated to take ${Math.round(sweep.sweepMs)} ms had not ended after ${Math.round(allowedMs)} ms; it was aborted`,
+    `an acquisition stated to take ${Math.round(sweep.acquisitionMs)} ms had not ended after ${Math.round(allowedMs)} ms; it was aborted`,
     facts,
   );
 }
@@ -122,21 +121,19 @@ async function judgeEvents(
 }
 
 /**
- * When point i was measured on the average: the sweeps of an average are taken as centred on the mean of
- * their starts, the points as spread evenly over one stated sweep, each in the middle of its own dwell.
+ * When point i was measured on the average: the passes of an average are taken as centred on the mean of
+ * their starts, the points as spread evenly over one pass, each in the middle of its own dwell.
  */
 function timeLawOf(sweep: InstrumentSweep, startedMs: readonly number[], stopMs: number): TimeLaw {
   const [begunMs = stopMs] = startedMs;
-  const points = sweep.frequenciesHz.length;
+  const { passesPerStart } = sweep;
   // Never later than what was observed: stated times may include what takes place elsewhere.
-  const lastSweepMs = stopMs - (startedMs.at(-1) ?? stopMs);
-  const byItself = startedMs.length === 1 ? sweep.averages : 1;
-  const sweepMs = Math.min(sweep.sweepMs, lastSweepMs / byItself);
-  const ownOffsetMs = ((byItself - 1) / 2) * sweepMs;
+  const lastStartMs = stopMs - (startedMs.at(-1) ?? stopMs);
+  const passMs = Math.min(sweep.passMs, lastStartMs / passesPerStart);
   const meanStartMs = startedMs.reduce((sum, ms) => sum + (ms - begunMs), 0) / Math.max(1, startedMs.length);
-  const halfDwellMs = sweepMs / points / 2;
-  const offsetMs = meanStartMs + ownOffsetMs;
-  return { kind: 'linear', firstMs: offsetMs + halfDwellMs, lastMs: offsetMs + sweepMs - halfDwellMs };
+  const offsetMs = meanStartMs + ((passesPerStart - 1) / 2) * passMs;
+  const halfDwellMs = passMs / sweep.frequenciesHz.length / 2;
+  return { kind: 'linear', firstMs: offsetMs + halfDwellMs, lastMs: offsetMs + passMs - halfDwellMs };
 }
 
 /** Selects and reads the wanted parameters, each 2N numbers. */

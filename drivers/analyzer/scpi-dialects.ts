@@ -38,6 +38,8 @@ export const optionalTemplates = [
   'averagingCount',
   'averagingCountQuery',
   'averagingClear',
+  'averagingByPoint',
+  'averagingModeQuery',
   'sweepTypeLinear',
   'sweepTypeQuery',
   'continuousQuery',
@@ -72,27 +74,25 @@ export interface ScpiDialect {
   readonly templates: ScpiTemplates;
   readonly channel: number;
   /**
-   * What one start runs while averaging is on. `one-sweep`: N starts make an average of N;
-   * `whole-average`: the instrument sweeps N times by itself.
+   * What one start runs while whole sweeps are averaged. `one-sweep`: N starts make an average of N;
+   * `whole-average`: the instrument sweeps N times by itself. Without meaning where it averages by point.
    */
   readonly oneStartRuns: 'one-sweep' | 'whole-average';
-  /** What the sweep time query covers while averaging is on. */
-  readonly sweepTimeCovers: 'one-sweep' | 'whole-average';
   /** Commands that an instrument may refuse as unknown (−113) without harm. */
   readonly mayBeUnknown: readonly TemplateName[];
 }
 
 /**
  * S-parameters by number of a trace: their count is set, each is defined, and data are read of the
- * selected one. One start is taken to run one sweep: were it the whole average, N starts would only cost
- * time, whereas one start too few would pass an unfinished average off as a finished one.
+ * selected one. Averaging is asked for by point, for then one start means one thing everywhere; where the
+ * instrument averages whole sweeps only, one start is taken to run one of them: were it the whole average,
+ * N starts would only cost time, whereas one too few would pass an unfinished average off as a finished one.
  */
 const numberedParameter: ScpiDialect = {
   name: 'numbered-parameter',
   channel: 1,
   oneStartRuns: 'one-sweep',
-  sweepTimeCovers: 'one-sweep',
-  mayBeUnknown: ['triggerImmediate', 'sweepTypeLinear'],
+  mayBeUnknown: ['triggerImmediate', 'sweepTypeLinear', 'averagingByPoint'],
   templates: {
     startFrequency: ':SENS{channel}:FREQ:STAR {value}',
     startFrequencyQuery: ':SENS{channel}:FREQ:STAR?',
@@ -115,6 +115,8 @@ const numberedParameter: ScpiDialect = {
     averagingCount: ':SENS{channel}:AVER:COUN {value}',
     averagingCountQuery: ':SENS{channel}:AVER:COUN?',
     averagingClear: ':SENS{channel}:AVER:CLE',
+    averagingByPoint: ':SENS{channel}:AVER:MODE POIN',
+    averagingModeQuery: ':SENS{channel}:AVER:MODE?',
     sweepTypeLinear: ':SENS{channel}:SWE:TYPE LIN',
     triggerImmediate: ':TRIG:SOUR IMM',
     sweepTimeQuery: ':SENS{channel}:SWE:TIME?',

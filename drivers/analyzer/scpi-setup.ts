@@ -18,9 +18,14 @@ const powerToleranceDb = 0.01;
 export interface InstrumentSweep extends PreparedSweep {
   startHz: number;
   stopHz: number;
-  /** One sweep of the average, as the instrument states it. */
-  sweepMs: number;
+  /** One way through all points, as the instrument states it; N times as long where it averages by point. */
+  passMs: number;
+  /** Starts that make one acquisition, and passes that each of them runs. */
+  starts: number;
+  passesPerStart: number;
 }
+
+type Course = Pick<InstrumentSweep, 'passMs' | 'starts' | 'passesPerStart' | 'acquisitionMs'>;
 
 /**
  * Sends the whole setup and proves it. Throws ANALYZER_COMMAND_REFUSED, ANALYZER_SETTING_DIFFERS (facts:
@@ -32,8 +37,9 @@ export async function applySetup(talk: ScpiConversation, setup: SweepSetup): Pro
   await applyModes(talk);
   await applySweep(talk, setup);
   await applyParameters(talk, setup);
+  const course = await applyAveraging(talk, setup);
   await confirmModes(talk, setup);
-  const sweep = await confirmSweep(talk, setup);
+  const sweep = { ...(await confirmSweep(talk, setup)), ...course };
   await confirmParameters(talk, setup);
   await talk.throwErrors('the read-back of the settings');
   return sweep;
@@ -64,9 +70,12 @@ function demand(talk: ScpiConversation, name: TemplateName): TemplateName {
   );
 }
 
-/** Sends a command by itself; "unknown command" is accepted where the dialect says that it may be. */
-async function tellIfKnown(talk: ScpiConversation, name: TemplateName): Promise<void> {
-  if (!talk.has(name)) return;
+/**
+ * Sends a command by itself; "unknown command" is accepted where the dialect says that it may be. Tells
+ * whether the instrument knew it.
+ */
+async function tellIfKnown(talk: ScpiConversation, name: TemplateName): Promise<boolean> {
+  if (!talk.has(name)) return false;
   await talk.tell(name);
   const entries = await talk.drain();
   const harmless = talk.dialect.mayBeUnknown.includes(name);
@@ -75,10 +84,11 @@ async function tellIfKnown(talk: ScpiConversation, name: TemplateName): Promise<
     name,
   );
   if (error) throw error;
+  return entries.every(({ code }) => code !== undefinedHeader);
 }
 
 async function applySweep(talk: ScpiConversation, setup: SweepSetup): Promise<void> {
-  const { startHz, stopHz, averages } = setup;
+  const { startHz, stopHz } = setup;
   // The edges must never cross, not even between two commands: some instruments refuse that, others move
   // the other edge along.
   if (startHz >= (await talk.askNumber('stopFrequencyQuery'))) {
@@ -91,13 +101,8 @@ async function applySweep(talk: ScpiConversation, setup: SweepSetup): Promise<vo
   await talk.tell('points', { value: setup.points });
   await talk.tell('ifBandwidth', { value: setup.ifBandwidthHz });
   await talk.tell('power', { value: setup.powerDbm });
-  if (averages > 1) {
-    await talk.tell(demand(talk, 'averagingCount'), { value: averages });
-    await talk.tell(demand(talk, 'averagingState'), { onOff: 'ON' });
-  } else {
-    await talk.tell('averagingState', { onOff: 'OFF' });
-  }
-  await talk.throwErrors('frequencies, points, bandwidth, power and averaging');
+  await talk.tell('averagingState', { onOff: 'OFF' });
+  await talk.throwErrors('frequencies, points, bandwidth and power');
 }
 
 async function applyParameters(talk: ScpiConversation, { parameters }: SweepSetup): Promise<void> {
@@ -106,6 +111,27 @@ async function applyParameters(talk: ScpiConversation, { parameters }: SweepSetu
     await talk.tell('parameterDefine', { trace: index + 1, parameter });
   }
   await talk.throwErrors('the definition of the S-parameters');
+}
+
+/**
+ * Averaging, and what follows from it for the course of an acquisition. The sweep time is asked while
+ * averaging is still off: what it covers afterwards is the maker's choice.
+ */
+async function applyAveraging(talk: ScpiConversation, setup: SweepSetup): Promise<Course> {
+  const { averages } = setup;
+  const sweepMs = await askSweepMs(talk, setup);
+  const acquisitionMs = sweepMs * averages;
+  if (averages === 1) return { passMs: sweepMs, starts: 1, passesPerStart: 1, acquisitionMs };
+  const byPoint =
+    (await tellIfKnown(talk, 'averagingByPoint')) &&
+    (await talk.askWord('averagingModeQuery')).startsWith('POIN');
+  await talk.tell(demand(talk, 'averagingCount'), { value: averages });
+  await talk.tell(demand(talk, 'averagingState'), { onOff: 'ON' });
+  await talk.throwErrors('averaging');
+  if (byPoint) return { passMs: acquisitionMs, starts: 1, passesPerStart: 1, acquisitionMs };
+  return talk.dialect.oneStartRuns === 'whole-average'
+    ? { passMs: sweepMs, starts: 1, passesPerStart: averages, acquisitionMs }
+    : { passMs: sweepMs, starts: averages, passesPerStart: 1, acquisitionMs };
 }
 
 /** Throws ANALYZER_SETTING_DIFFERS unless `got` is what was asked. */
@@ -156,7 +182,10 @@ function formatOf(word: string): string {
   return bits === undefined ? word : `real${bits}`;
 }
 
-async function confirmSweep(talk: ScpiConversation, setup: SweepSetup): Promise<InstrumentSweep> {
+async function confirmSweep(
+  talk: ScpiConversation,
+  setup: SweepSetup,
+): Promise<Omit<InstrumentSweep, keyof Course>> {
   const { startHz, stopHz } = await confirmGrid(talk, setup);
   const ifBandwidthHz = await talk.askNumber('ifBandwidthQuery');
   requireSetting(
@@ -167,7 +196,6 @@ async function confirmSweep(talk: ScpiConversation, setup: SweepSetup): Promise<
   );
   const powerDbm = await talk.askNumber('powerQuery');
   requireSetting('power (dBm)', setup.powerDbm, powerDbm, powerToleranceDb);
-  const sweepMs = await askSweepMs(talk, setup);
   return {
     startHz,
     stopHz,
@@ -176,8 +204,6 @@ async function confirmSweep(talk: ScpiConversation, setup: SweepSetup): Promise<
     powerDbm,
     averages: setup.averages,
     parameters: setup.parameters,
-    sweepMs,
-    acquisitionMs: sweepMs * setup.averages,
   };
 }
 
@@ -213,8 +239,7 @@ export function linearGrid(startHz: number, stopHz: number, points: number): Flo
 /** One sweep as the instrument states it, or estimated from the filter's settling where it does not. */
 async function askSweepMs(talk: ScpiConversation, setup: SweepSetup): Promise<number> {
   const stated = talk.has('sweepTimeQuery') ? 1000 * (await talk.askNumber('sweepTimeQuery')) : 0;
-  if (stated <= 0) return setup.points * (1 + 2000 / setup.ifBandwidthHz);
-  return talk.dialect.sweepTimeCovers === 'whole-average' ? stated / setup.averages : stated;
+  return stated > 0 ? stated : setup.points * (1 + 2000 / setup.ifBandwidthHz);
 }
 
 async function confirmParameters(talk: ScpiConversation, { parameters }: SweepSetup): Promise<void> {

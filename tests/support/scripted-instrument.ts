@@ -54,6 +54,8 @@ export class ScriptedInstrument {
   clears = 0;
   visits = 0;
   frozen = false;
+  /** Knows averaging by point; else by whole sweeps only, one of them for each start. */
+  averagesByPoint = false;
   sweepMs: number;
   lineEnd = '\r\n';
   identity = 'TESTWERK,VN-2,77,1.0';
@@ -67,6 +69,7 @@ export class ScriptedInstrument {
   #line = '';
   #busyUntilMs = 0;
   #reportEnd = false;
+  #byPoint = false;
 
   constructor(clock: Clock, options: ScriptedOptions = {}) {
     this.#clock = clock;
@@ -195,6 +198,12 @@ export class ScriptedInstrument {
         return undefined;
       case 'SENS:SWE:TIME?':
         return String(this.sweepMs / 1000);
+      case 'SENS:AVER:MODE':
+        if (!this.averagesByPoint) return this.#unknown(header);
+        this.#byPoint = tail === 'POIN';
+        return undefined;
+      case 'SENS:AVER:MODE?':
+        return this.#byPoint ? 'POIN' : 'SWE';
       case 'SENS:SWE:TYPE':
         return undefined;
       case 'CALC:PAR:COUN':
@@ -237,7 +246,9 @@ export class ScriptedInstrument {
       return;
     }
     if (!this.frozen) this.sweeps += 1;
-    this.#busyUntilMs = this.#clock.monotonicMs() + this.sweepMs;
+    this.#busyUntilMs =
+      this.#clock.monotonicMs() +
+      this.sweepMs * (this.#byPoint && this.settings.averaging ? this.settings.averages : 1);
   }
 
   #unknown(header: string): undefined {

@@ -1,7 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import type { SParameter } from '../../../../drivers/analyzer/analyzer.ts';
 import { dialectNamed } from '../../../../drivers/analyzer/scpi-dialects.ts';
-import { failureOf, preparedBench } from '../../../support/analyzer-bench.ts';
+import { failureOf, preparedBench, sampleSetup } from '../../../support/analyzer-bench.ts';
 import { blockOf, type ScriptedInstrument } from '../../../support/scripted-instrument.ts';
 
 function expectedTrace(instrument: ScriptedInstrument, parameter: SParameter): number[] {
@@ -123,6 +123,20 @@ describe('the sweep', () => {
     // The middle of the average lies in the middle of all its sweeps.
     const middleMs = (timeLaw.firstMs + timeLaw.lastMs) / 2;
     expect(Math.abs(middleMs - (stopMonotonicMs - startMonotonicMs) / 2)).toBeLessThan(5);
+  });
+
+  it('is started once where the instrument averages each point', async () => {
+    const { clock, instrument, analyzer } = await preparedBench();
+    instrument.averagesByPoint = true;
+    const sweep = await clock.run(analyzer.prepare({ ...sampleSetup, averages: 4 }));
+    expect(sweep.acquisitionMs).toBe(800);
+    const { startMonotonicMs, stopMonotonicMs, timeLaw } = await clock.run(analyzer.acquire());
+    expect(instrument.sweeps).toBe(1);
+    expect(stopMonotonicMs - startMonotonicMs).toBeGreaterThanOrEqual(800);
+    expect(stopMonotonicMs - startMonotonicMs).toBeLessThan(810);
+    // Five points in 800 ms.
+    expect(timeLaw.firstMs).toBeCloseTo(80, 6);
+    expect(timeLaw.lastMs).toBeCloseTo(720, 6);
   });
 
   it('is started once where one start runs the whole average', async () => {

@@ -72,8 +72,9 @@ describe('prepare', () => {
 
   it('never lets start pass stop, in either direction', async () => {
     const { clock, instrument, analyzer } = analyzerBench();
+    let crossed = 0;
     instrument.twist = () => {
-      expect(instrument.settings.startHz).toBeLessThanOrEqual(instrument.settings.stopHz);
+      if (instrument.settings.startHz > instrument.settings.stopHz) crossed += 1;
       return undefined;
     };
     await clock.run(analyzer.identify());
@@ -81,6 +82,7 @@ describe('prepare', () => {
       await clock.run(analyzer.prepare({ ...sampleSetup, startHz, stopHz: startHz + 50e6 }));
     }
     expect(instrument.settings).toMatchObject({ startHz: 100e6, stopHz: 150e6 });
+    expect(crossed).toBe(0);
   });
 
   it.each([['IF bandwidth', { ifBandwidthHz: 1234 }, { asked: 1234, got: 1500 }]])(
@@ -156,6 +158,7 @@ describe('prepare', () => {
   it('does not lay old errors to the new settings', async () => {
     const { clock, instrument, analyzer } = analyzerBench();
     await clock.run(analyzer.identify());
+    await clock.run(clock.sleep(5));
     instrument.error('-224,"Illegal parameter value"');
     await clock.run(analyzer.prepare(sampleSetup));
     await clock.run(analyzer.acquire());
@@ -350,6 +353,16 @@ describe('source', () => {
     await clock.run(off);
     expect(instrument.settings.output).toBe(false);
     expect(instrument.visits).toBe(2);
+  });
+
+  it('goes off even where the new connection obeys and says nothing', async () => {
+    const { clock, instrument, analyzer } = await preparedBench();
+    const dead = instrument.visits;
+    instrument.twist = () => ({ reply: null, ignore: instrument.visits === dead });
+    expect(await failureOf(clock.run(analyzer.source(false)))).toMatchObject({
+      code: 'ANALYZER_NOT_ANSWERING',
+    });
+    expect(instrument.settings.output).toBe(false);
   });
 
   it('goes off with a closed link, whatever the signal says, and reports when it cannot', async () => {
