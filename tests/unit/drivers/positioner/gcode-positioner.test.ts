@@ -387,6 +387,35 @@ describe('restarts and alarms', () => {
     expect(positioner.referenceValid).toBe(false);
   });
 
+  it('an unseen restart too near to zero to show is found before anything moves', async () => {
+    const { clock, controller, positioner } = await makeReadyRig();
+    await clock.run(positioner.moveTo({ azimuth: 0.0125 }));
+    controller.powerCycle(10, '', false);
+    await clock.run(clock.sleep(50));
+    const before = motionTargets(controller.lines).length;
+    expect(await codeOf(clock, positioner.moveTo({ azimuth: 30 }))).toBe('POSITIONER_RESTARTED');
+    expect(motionTargets(controller.lines)).toHaveLength(before);
+  });
+
+  it('a stop at rest does not cover up an unseen restart', async () => {
+    const { clock, controller, positioner } = await makeReadyRig();
+    controller.powerCycle(10, '', false);
+    await clock.run(clock.sleep(50));
+    await clock.run(positioner.stop());
+    expect(positioner.referenceValid).toBe(false);
+    expect(await codeOf(clock, positioner.moveTo({ azimuth: 30 }))).toBe('POSITIONER_RESTARTED');
+  });
+
+  it('a wrong place that comes from an unseen restart is told as the restart', async () => {
+    const { clock, controller, positioner } = await makeReadyRig();
+    controller.answerInstead = (line) => {
+      if (!line.startsWith('G4')) return undefined;
+      controller.powerCycle(1, '', false);
+      return ['ok'];
+    };
+    expect(await codeOf(clock, positioner.moveTo({ azimuth: 1 }))).toBe('POSITIONER_RESTARTED');
+  });
+
   it('a restart while nobody was connected, its banner missed, shows by the forgotten modes', async () => {
     const { clock, controller, positioner } = await makeReadyRig();
     await clock.run(positioner.moveTo({ azimuth: 60 }));
