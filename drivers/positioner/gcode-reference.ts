@@ -133,7 +133,7 @@ export class GcodeReference {
     this.#alarm = undefined;
   }
 
-  /** Throws POSITIONER_RESTARTED, POSITIONER_ALARM or POSITIONER_REFERENCE_LOST while nothing is to be trusted. */
+  /** Throws POSITIONER_RESTARTED or POSITIONER_REFERENCE_LOST while nothing is to be trusted. */
   check(): void {
     if (this.#valid) return;
     const because = this.#lostBecause;
