@@ -203,6 +203,7 @@ export class ScriptedInstrument {
         this.#byPoint = tail === 'POIN';
         return undefined;
       case 'SENS:AVER:MODE?':
+        if (!this.averagesByPoint) return this.#unknown(header);
         return this.#byPoint ? 'POIN' : 'SWE';
       case 'SENS:SWE:TYPE':
         return undefined;

@@ -370,4 +370,11 @@ describe('a link that closes', () => {
     await clock.run(session.close());
     expect(await clock.run(asked)).toMatchObject({ code: 'LINK_CLOSED' });
   });
+
+  it('that takes no more bytes is given up', async () => {
+    const { clock, link, session } = await openedSession();
+    link.write = () => new Promise(() => {});
+    expect(await failureOf(clock.run(session.tell(':OUTP ON')))).toMatchObject({ code: 'LINK_TIMEOUT' });
+    expect(session.standing.kind).toBe('out-of-step');
+  });
 });
