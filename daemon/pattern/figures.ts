@@ -75,7 +75,7 @@ export function cutFigures(cut: Cut, options: CutFigureOptions = {}): CutFigures
     halfPowerBeamwidthDeg: halfPower.kind === 'value' ? valueFigure(halfPower.value) : halfPower,
     tenDbBeamwidthDeg: tenDb.kind === 'value' ? valueFigure(tenDb.value) : tenDb,
     firstNullBeamwidthDeg: firstNullBeamwidth(extrema),
-    squintDeg: squint(peak, halfPower, finite('boresightDeg', options.boresightDeg ?? 0)),
+    squintDeg: squint(halfPower, finite('boresightDeg', options.boresightDeg ?? 0)),
     frontToBackDb: frontToBack(cut, peak, floor),
     frontToRearDb: frontToRear(cut, peak, floor, options.rearHalfWidthDeg),
     firstSideLobeLeftDb: firstSideLobeDb(cut, peak, extrema, 'left', floor),

@@ -25,6 +25,11 @@ describe('beamwidth', () => {
   it('counts a sample that lies on the threshold', () => {
     const cut = byHand([-2, -1, 0, 1, 2], [-8, -4, 0, -4, -8]);
     expect(beamwidth(cut, { ...peakOf(cut), levelDb: 0 }, { dropDb: 4 })).toMatchObject({ value: 2 });
+    // It has fallen 4 dB there, also when it rises again.
+    const touching = byHand([-3, -2, -1, 0, 1, 2, 3], [-9, -2, -4, 0, -4, -1, -9]);
+    expect(beamwidth(touching, { ...peakOf(touching), levelDb: 0 }, { dropDb: 4 })).toMatchObject({
+      value: 2,
+    });
   });
 
   it('counts from the refined peak', () => {

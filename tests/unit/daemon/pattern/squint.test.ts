@@ -10,14 +10,24 @@ describe('squint', () => {
     const lobe = turn((deg) => Math.max(-40, parabola(60, -4)(deg)) + (deg === 3 ? 0.3 : 0));
     const peak = peakOf(lobe);
     expect(Math.abs(peak.angleDeg - 3)).toBeLessThan(0.5);
-    const found = squint(peak, beamwidth(lobe, peak, { referenceDb: 0 }));
+    const found = squint(beamwidth(lobe, peak, { referenceDb: 0 }));
     expect(found.kind === 'value' && found.value).toBeCloseTo(-4, 6);
   });
 
   it('wraps: a beam at 179° is 2° from a boresight at −179°', () => {
     const lobe = turn((deg) => Math.max(-40, parabola(60, 179)(deg < -1 ? deg + 360 : deg)));
-    const found = squint(peakOf(lobe), beamwidth(lobe, peakOf(lobe)), -179);
+    const found = squint(beamwidth(lobe, peakOf(lobe)), -179);
     expect(found.kind === 'value' && found.value).toBeCloseTo(-2, 6);
+  });
+});
+
+describe('squint without a beam', () => {
+  it('is absent, with the reason', () => {
+    const circle = turn((deg) => Math.cos((deg * Math.PI) / 180) / 100);
+    expect(squint(beamwidth(circle, peakOf(circle)))).toMatchObject({
+      kind: 'absent',
+      because: expect.stringContaining('omnidirectional'),
+    });
   });
 });
 
