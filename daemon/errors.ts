@@ -176,11 +176,13 @@ export const adviceTable: Readonly<Record<ErrorCode, Advice>> = {
   },
   POSITIONER_BAD_ANSWER: {
     meaning: 'A report of the controller could not be read.',
-    nextStep: 'The bytes are in the log. Look for noise on the serial cable (earthing, motor cables beside it).',
+    nextStep:
+      'The bytes are in the log. Look for noise on the serial cable (earthing, motor cables beside it).',
     exitCode: hardware,
   },
   POSITIONER_ALARM: {
-    meaning: 'The controller is in alarm and moves no more; the message says whether its position is still true.',
+    meaning:
+      'The controller is in alarm and moves no more; the message says whether its position is still true.',
     nextStep: 'Look at the axis before anything else, clear the cause, then measure again.',
     exitCode: hardware,
   },
@@ -255,7 +257,8 @@ export const adviceTable: Readonly<Record<ErrorCode, Advice>> = {
     exitCode: badInput,
   },
   REFERENCE_DOES_NOT_FIT: {
-    meaning: 'The gain reference does not fit the plan: other frequencies, other range, or too short a table.',
+    meaning:
+      'The gain reference does not fit the plan: other frequencies, other range, or too short a table.',
     nextStep: 'Measure the reference antenna with the same band, points and settings.',
     exitCode: badInput,
   },

@@ -1,6 +1,7 @@
 // Time, as everything else receives it. A clock is an outside device like any other: it is handed in,
 // so that the same code runs in real time and in a simulated night. This is the only file that touches
 // timers or dates; the linter refuses them everywhere else.
+import { DueQueue } from './due-queue.ts';
 
 export type Cancel = () => void;
 
@@ -45,7 +46,15 @@ export function sleepOn(
   });
 }
 
+/**
+ * Real time. Acts happen in the order of their moments, never early; what is due within a millisecond, the
+ * resolution of a timer, is met by turns of the event loop.
+ */
 export class SystemClock implements Clock {
+  readonly #queue = new DueQueue();
+  #disarm: Cancel = () => {};
+  #armedForMs = Number.POSITIVE_INFINITY;
+
   monotonicMs(): number {
     return performance.now();
   }
@@ -59,11 +68,51 @@ export class SystemClock implements Clock {
   }
 
   at(dueMs: number, act: () => void): Cancel {
-    const timer = setTimeout(act, Math.max(0, dueMs - this.monotonicMs()));
-    return () => clearTimeout(timer);
+    const cancel = this.#queue.push(dueMs, act);
+    this.#arm();
+    return () => {
+      cancel();
+      this.#arm();
+    };
   }
 
   whileReal<T>(work: Promise<T>): Promise<T> {
     return work;
   }
+
+  /** One timer for the earliest act; none when nothing waits, so that the process may end. */
+  #arm(): void {
+    const earliestMs = this.#queue.earliestMs ?? Number.POSITIVE_INFINITY;
+    if (earliestMs === this.#armedForMs) return;
+    this.#disarm();
+    this.#armedForMs = earliestMs;
+    if (earliestMs !== Number.POSITIVE_INFINITY) this.#wait();
+  }
+
+  #wait(): void {
+    const leftMs = this.#armedForMs - this.monotonicMs();
+    if (leftMs < 1) {
+      const turn = setImmediate(() => this.#wake());
+      this.#disarm = () => clearImmediate(turn);
+    } else {
+      const timer = setTimeout(() => this.#wake(), Math.min(leftMs, longestTimerMs));
+      this.#disarm = () => clearTimeout(timer);
+    }
+  }
+
+  #wake(): void {
+    if (this.monotonicMs() < this.#armedForMs) {
+      this.#wait();
+      return;
+    }
+    this.#armedForMs = Number.POSITIVE_INFINITY;
+    try {
+      this.#queue.takeDue(this.monotonicMs())?.();
+    } finally {
+      this.#arm();
+    }
+  }
 }
+
+/** Node's timers hold no more than 2^31 − 1 ms. */
+const longestTimerMs = 2 ** 31 - 1;

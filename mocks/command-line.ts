@@ -61,7 +61,7 @@ function build(around: MockSurroundings): Command {
     .description('A simulated bench: analyzer, positioner and an antenna on the mast, for any client.')
     .helpCommand(false);
   const serveCommand = withScene(program.command('serve'))
-    .description('Serve both devices over TCP until a stop signal, the line `quit` or the end of input.')
+    .description('Serve both devices over TCP until a stop signal or the line `quit`.')
     .option('--gear-play <deg>', 'gear play of every axis', decimal, 0)
     .option('--accelerate <factor>', 'how much faster than the world time runs', positive, 1)
     .option('--host <address>', 'where to listen', '127.0.0.1')

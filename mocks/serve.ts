@@ -1,5 +1,5 @@
 // One session of `nightcut-mock serve`: opens the ports, says where they are, obeys lines from standard input
-// until it is told to stop. What the bench is made of comes from the command line.
+// until it is told to stop. The end of the input stops nothing: a bench in the background has none. What the bench is made of comes from the command line.
 import { createInterface } from 'node:readline';
 import type { Clock } from '../drivers/clock.ts';
 import { AcceleratedClock } from './accelerated-clock.ts';
@@ -25,7 +25,7 @@ export interface ServeOptions {
   json: boolean;
 }
 
-/** Serves until a stop signal, `quit` or the end of standard input. Throws LINK_OPEN_FAILED, SceneError. */
+/** Serves until a stop signal or the line `quit`. Throws LINK_OPEN_FAILED, SceneError. */
 export async function serve(options: ServeOptions, around: MockSurroundings): Promise<void> {
   const bench = new SimulatedBench(new AcceleratedClock(around.clock, options.accelerate), options.bench);
   try {
@@ -60,7 +60,7 @@ function greeting(options: ServeOptions, ports: ServeOptions['ports']): string {
   ].join('\n');
 }
 
-/** Obeys lines until one says quit, the input ends or a stop signal comes. */
+/** Obeys lines until one says quit or a stop signal comes. */
 function obey(bench: SimulatedBench, json: boolean, around: MockSurroundings): Promise<void> {
   return new Promise((resolve) => {
     const lines = createInterface({ input: around.stdin, terminal: false });
@@ -76,7 +76,6 @@ function obey(bench: SimulatedBench, json: boolean, around: MockSurroundings): P
       const outcome = carryOut(bench, words);
       if (outcome !== undefined) tell(outcome, json, around);
     });
-    lines.on('close', stop);
   });
 }
 

@@ -3,20 +3,17 @@
 // something is awaited is a deadlock, reported with what was waited for. Only for in-memory links: real
 // sockets know nothing of it, and every time-out would fire before their bytes arrive.
 import { type Cancel, type Clock, nextTurn, sleepOn } from '../drivers/clock.ts';
+import { DueQueue } from '../drivers/due-queue.ts';
 
-interface Due {
-  dueMs: number;
-  order: number;
-  act: () => void;
-}
+/** Chains of promises may need a few turns of the event loop before they ask for time again. */
+const patientTurns = 5;
 
 export class SimulatedClock implements Clock {
   #nowMs = 0;
   #wallOffsetMs: number;
-  #order = 0;
   #realWork = 0;
   #realDone: (() => void) | undefined;
-  readonly #queue: Due[] = [];
+  readonly #queue = new DueQueue();
 
   /** `wallStartMs`: the wall time at which virtual time begins. */
   constructor(wallStartMs = 1_767_225_600_000) {
@@ -41,11 +38,7 @@ export class SimulatedClock implements Clock {
   }
 
   at(dueMs: number, act: () => void): Cancel {
-    const due: Due = { dueMs: Math.max(dueMs, this.#nowMs), order: this.#order++, act };
-    pushDue(this.#queue, due);
-    return () => {
-      due.act = () => {};
-    };
+    return this.#queue.push(Math.max(dueMs, this.#nowMs), act);
   }
 
   async whileReal<T>(work: Promise<T>): Promise<T> {
@@ -65,6 +58,7 @@ export class SimulatedClock implements Clock {
       settled = true;
     });
     outcome.catch(() => {});
+    let idleTurns = 0;
     for (;;) {
       await nextTurn();
       if (settled) return outcome;
@@ -74,57 +68,21 @@ export class SimulatedClock implements Clock {
         });
         continue;
       }
-      if (!this.#step()) {
-        // One more chance: promise chains longer than a turn.
-        await nextTurn();
-        if (settled) return outcome;
-        if (this.#realWork === 0 && this.#queue.length === 0) {
-          throw new Error(
-            `simulated time stands at ${this.#nowMs} ms: something is awaited and nothing is due`,
-          );
-        }
+      if (this.#step()) idleTurns = 0;
+      else if (++idleTurns > patientTurns) {
+        throw new Error(
+          `simulated time stands at ${this.#nowMs} ms: something is awaited and nothing is due`,
+        );
       }
     }
   }
 
   /** Acts on everything due at the earliest moment; false when nothing is due. */
   #step(): boolean {
-    const first = this.#queue[0];
-    if (!first) return false;
-    this.#nowMs = first.dueMs;
-    while (this.#queue[0] && this.#queue[0].dueMs <= this.#nowMs) popDue(this.#queue)?.act();
+    const earliestMs = this.#queue.earliestMs;
+    if (earliestMs === undefined) return false;
+    this.#nowMs = Math.max(this.#nowMs, earliestMs);
+    for (let act = this.#queue.takeDue(this.#nowMs); act; act = this.#queue.takeDue(this.#nowMs)) act();
     return true;
   }
-}
-
-function before(a: Due, b: Due): boolean {
-  return a.dueMs < b.dueMs || (a.dueMs === b.dueMs && a.order < b.order);
-}
-
-function pushDue(heap: Due[], due: Due): void {
-  let at = heap.push(due) - 1;
-  while (at > 0) {
-    const parent = (at - 1) >> 1;
-    if (!before(due, heap[parent]!)) break;
-    heap[at] = heap[parent]!;
-    at = parent;
-  }
-  heap[at] = due;
-}
-
-function popDue(heap: Due[]): Due | undefined {
-  const top = heap[0];
-  const last = heap.pop();
-  if (!top || !last || heap.length === 0) return top;
-  let at = 0;
-  for (;;) {
-    let child = 2 * at + 1;
-    if (child >= heap.length) break;
-    if (child + 1 < heap.length && before(heap[child + 1]!, heap[child]!)) child += 1;
-    if (!before(heap[child]!, last)) break;
-    heap[at] = heap[child]!;
-    at = child;
-  }
-  heap[at] = last;
-  return top;
 }

@@ -19,8 +19,9 @@ export function renderTable(header: readonly string[], rows: readonly (readonly 
   return `${[line(header), ...rows.map(line)].join('\n')}\n`;
 }
 
-/** `2 h 05 min`, `3 min 20 s`, `12 s`. */
+/** `2 h 05 min`, `3 min 20 s`, `12 s`, `0.2 s`. */
 export function renderDuration(ms: number): string {
+  if (ms > 0 && ms < 950) return `${(ms / 1000).toFixed(1)} s`;
   const seconds = Math.max(0, Math.round(ms / 1000));
   const minutes = Math.floor(seconds / 60);
   const hours = Math.floor(minutes / 60);

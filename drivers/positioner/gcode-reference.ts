@@ -210,16 +210,16 @@ export class GcodeReference {
     });
   }
 
-  /** All axes at zero, where one of them could not have got in the time, or had no motion to get there. */
+  /**
+   * All axes at zero, where one of them stood elsewhere and had no motion to get there. During a motion of
+   * ours zero may be on the way; a restart then shows in the mark that is read before and after each move.
+   */
   #fellToZero(previous: Placed, now: Placed): boolean {
+    if (this.motionExpected || isMoving(previous.report) || isMoving(now.report)) return false;
     if (!now.machine.every((units) => Math.abs(units) <= zeroUnits)) return false;
-    const elapsedS = (now.monotonicMs - previous.monotonicMs) / 1000;
-    const wasMoving = this.motionExpected || isMoving(previous.report) || isMoving(now.report);
     return this.#axes.some((axis) => {
       const jumpDeg = Math.abs((now.position[axis.name] ?? 0) - (previous.position[axis.name] ?? 0));
-      const rateDegPerS = this.#limits[axis.name]?.rateDegPerS ?? axis.rateDegPerS;
-      const possibleDeg = wasMoving ? rateDegPerS * elapsedS * 1.3 + rateDegPerS * 0.2 : 0;
-      return jumpDeg > possibleDeg + axis.toleranceDeg;
+      return jumpDeg > axis.toleranceDeg;
     });
   }
 

@@ -88,9 +88,11 @@ export function halfWavePattern(): Pattern {
 
 /**
  * A horizontal uniform line along y, sin(u)/u with u = π(L/λ)·sin(azimuth)·cos(elevation), no element
- * pattern: front and back alike. `gainDbi` absent: its own directivity at each frequency.
+ * pattern: front and back alike, unless a screen makes all that lies behind weaker by `frontToBackDb`.
+ * `gainDbi` absent: the directivity of the line without a screen, at each frequency.
  */
-export function lineSourcePattern(lengthM: number, gainDbi?: number): Pattern {
+export function lineSourcePattern(lengthM: number, gainDbi?: number, frontToBackDb = 0): Pattern {
+  const behind = 10 ** (-frontToBackDb / 20);
   const fixed = gainDbi === undefined ? undefined : 10 ** (gainDbi / 20);
   const known = new Map<number, number>();
   const peak = (frequencyHz: number): number => {
@@ -104,7 +106,8 @@ export function lineSourcePattern(lengthM: number, gainDbi?: number): Pattern {
   };
   return (frequencyHz, azimuth, elevation) => {
     const lengthWaves = (lengthM * frequencyHz) / speedOfLightMPerS;
-    return peak(frequencyHz) * sinc(Math.PI * lengthWaves * Math.sin(azimuth) * Math.cos(elevation));
+    const screen = Math.cos(azimuth) * Math.cos(elevation) < 0 ? behind : 1;
+    return screen * peak(frequencyHz) * sinc(Math.PI * lengthWaves * Math.sin(azimuth) * Math.cos(elevation));
   };
 }
 

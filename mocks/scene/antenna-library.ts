@@ -53,7 +53,7 @@ function antennaOf(description: AntennaDescription): Antenna {
       return new AnalyticAntenna(name, 'matched', port, cardioidPattern(gainDbi, frontToBackDb));
     }
     case 'line-source': {
-      const pattern = lineSourcePattern(description.lengthM, description.gainDbi);
+      const pattern = lineSourcePattern(description.lengthM, description.gainDbi, description.frontToBackDb);
       return new AnalyticAntenna(name, 'matched', port, pattern);
     }
   }

@@ -34,8 +34,13 @@ export type AntennaDescription = AntennaOptions &
     | ({ kind: 'isotropic'; gainDbi?: number } & DeclaredReflection)
     /** Pure cardioid without `frontToBackDb`; gain 4.771 dBi (its directivity) unless stated. */
     | ({ kind: 'cardioid'; gainDbi?: number; frontToBackDb?: number } & DeclaredReflection)
-    /** Horizontal uniform line; gain is its own directivity unless stated. */
-    | ({ kind: 'line-source'; lengthM: number; gainDbi?: number } & DeclaredReflection)
+    /** Horizontal uniform line; gain is its own directivity unless stated; a screen behind it if asked for. */
+    | ({
+        kind: 'line-source';
+        lengthM: number;
+        gainDbi?: number;
+        frontToBackDb?: number;
+      } & DeclaredReflection)
   );
 
 /** A reflecting wall parallel to the line of sight; left is towards growing azimuth. */
@@ -92,6 +97,9 @@ export interface SceneDescription {
   noise?: { snrDb?: number; reflectionSnrDb?: number; atHz?: number };
 }
 
+/** What stands at the far end unless told: smooth over any band, as a range antenna should be. */
+const usualRangeAntenna: AntennaDescription = { kind: 'cardioid', gainDbi: 8, frontToBackDb: 20 };
+
 type Filled<T> = { [K in keyof T]-?: Exclude<T[K], undefined> };
 
 export interface CompleteScene {
@@ -116,7 +124,7 @@ export function completeScene(description: SceneDescription = {}): CompleteScene
     antennas: {
       aut: antennas.aut ?? { kind: 'yagi5' },
       reference: antennas.reference ?? { kind: 'dipole' },
-      range: antennas.range ?? { kind: 'yagi5' },
+      range: antennas.range ?? usualRangeAntenna,
     },
     autPort: description.autPort ?? 1,
     stacking: description.stacking ?? 'azimuth-over-elevation',

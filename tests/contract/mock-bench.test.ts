@@ -59,7 +59,7 @@ const sessions: Session[] = [];
 
 afterEach(async () => {
   for (const session of sessions.splice(0)) {
-    session.stdin.end();
+    session.stop();
     await session.code;
   }
 });
@@ -153,15 +153,18 @@ describe('nightcut-mock serve', () => {
     expect(list.data.map((entry: { name: string }) => entry.name)).toContain('step-loss');
   });
 
-  it('ends on a stop signal, on the end of input, and closes its ports', async () => {
-    const first = await served();
-    first.stop();
-    expect(await first.code).toBe(0);
-    await until(() => first.positioner.isClosed);
-    const second = await served();
-    second.stdin.end();
-    expect(await second.code).toBe(0);
-    await until(() => second.analyzer.isClosed);
+  it('ends on a stop signal and closes its ports', async () => {
+    const { positioner, stop, code } = await served();
+    stop();
+    expect(await code).toBe(0);
+    await until(() => positioner.isClosed);
+  });
+
+  it('goes on after the end of input: a bench in the background has none', async () => {
+    const { analyzer, stdin } = await served();
+    stdin.end();
+    await new Promise((resolve) => setTimeout(resolve, 100));
+    expect(await analyzer.ask('*IDN?\n', /\n$/)).toContain(',');
   });
 
   it('says in one line that a port is taken, with exit code 3', async () => {

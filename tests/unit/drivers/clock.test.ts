@@ -28,6 +28,30 @@ describe('SystemClock', () => {
     expect(acted).toEqual(['past', 'later']);
   });
 
+  it('lets no later moment overtake an earlier one, however close they are', async () => {
+    const acted: number[] = [];
+    const startMs = clock.monotonicMs() + 2;
+    // Registered in another order than they are due, 10 µs apart, across the resolution of a timer.
+    const places = Array.from({ length: 400 }, (_, i) => (i * 37) % 400);
+    for (const place of places) clock.at(startMs + place / 100, () => acted.push(place));
+    await clock.sleep(40);
+    expect(acted).toEqual([...acted].sort((a, b) => a - b));
+    expect(acted).toHaveLength(400);
+  });
+
+  it('never acts early', async () => {
+    const early: number[] = [];
+    const startMs = clock.monotonicMs();
+    const waits = Array.from({ length: 50 }, (_, i) => i * 0.37);
+    for (const waitMs of waits) {
+      clock.at(startMs + waitMs, () => {
+        if (clock.monotonicMs() < startMs + waitMs) early.push(waitMs);
+      });
+    }
+    await clock.sleep(60);
+    expect(early).toEqual([]);
+  });
+
   it('ends a sleep as soon as it is aborted, with the reason', async () => {
     const abort = new AbortController();
     const startMs = clock.monotonicMs();
