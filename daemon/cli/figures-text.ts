@@ -68,9 +68,10 @@ function renderFrequency({ frequenciesHz, cuts }: FiguresDocument, index: number
   const reasons: string[] = [];
   const shown = (entry: FigureEntry | undefined, digits: number): string => {
     if (!entry) return '';
-    if (!('absent' in entry)) return renderEntry(entry, digits);
-    if (!reasons.includes(entry.absent)) reasons.push(entry.absent);
-    return `(${reasons.indexOf(entry.absent) + 1})`;
+    const reason = 'absent' in entry ? entry.absent : entry.note;
+    if (reason !== undefined && !reasons.includes(reason)) reasons.push(reason);
+    const mark = reason === undefined ? '' : `(${reasons.indexOf(reason) + 1})`;
+    return 'absent' in entry ? mark : `${mark} ${renderEntry(entry, digits)}`.trim();
   };
   const rows = (Object.entries(labels) as [CutFigureKey, (typeof labels)[CutFigureKey]][])
     .filter(([key]) => cuts.some((cut) => cut.figures[key]))

@@ -62,7 +62,7 @@ export interface CutFigureOptions {
  */
 export function cutFigures(cut: Cut, options: CutFigureOptions = {}): CutFigures {
   checkCut(cut);
-  const peak = peakOf(cut);
+  const peak = peakOf(cut, options.floorDb);
   const floor = floorBeside(peak.levelDb, options.floorDb);
   if (options.floorDb !== undefined && peak.levelDb <= floor.resolvedDb) return unresolved(options);
   const firstReading = beamwidth(cut, peak);
@@ -83,7 +83,9 @@ export function cutFigures(cut: Cut, options: CutFigureOptions = {}): CutFigures
     sideLobeLevelDb: sideLobeLevelDb(extrema, peak, floor),
     circularityDb: circularity(cut, floor),
   };
-  return withGain(figures, options, (constantDb) => valueFigure(peak.levelDb + constantDb));
+  // Counted from the beam's top as beamwidths are: the largest of many noisy samples lies above it.
+  const gainLevelDb = peak.flat ? meanDb(cut) : referenceDb;
+  return withGain(figures, options, (constantDb) => valueFigure(gainLevelDb + constantDb));
 }
 
 /** Lobes must stand out of the stated floor, and of the noise that the cut itself shows. */
@@ -100,6 +102,10 @@ function extremaAboveNoise(
     noiseDb,
     ...(options.prominenceDb === undefined ? {} : { prominenceDb: options.prominenceDb }),
   });
+}
+
+function meanDb({ levelDb }: Cut): number {
+  return levelDb.reduce((sum, level) => sum + level, 0) / levelDb.length;
 }
 
 function peakDirection(peak: Peak): Figure {

@@ -1,13 +1,16 @@
 // The peak of a cut: its largest level, placed between the samples where the neighbours allow it.
 import { wrapDeg } from './angles.ts';
 import type { Cut } from './cut.ts';
+import { amplitudeRatio, lowestLevelDb } from './decibels.ts';
 import { parabolaVertex } from './parabola.ts';
 
 /** A parabola that lifts the largest sample by more than this is no lobe's top: too few samples, or a jump. */
 export const largestLiftDb = 1;
 
-/** Levels that differ by no more than this round the whole cut have no peak. */
+/** Levels that differ by no more than this round the whole cut have no peak, however little noise there is. */
 const flatDb = 1e-9;
+/** Largest minus least of some hundred noisy levels: 361 Gaussian ones span 6 standard deviations or so. */
+const noiseSpan = 8;
 
 export interface Peak {
   /** The largest sample; the middle one of several equal neighbours. */
@@ -32,11 +35,13 @@ export interface Peak {
  * and where the parabola would lift the level by more than `largestLiftDb`.
  *
  * @param cut levels in dB over degrees
+ * @param floorDb the range's floor in the unit of the levels, where it is known: differences that its noise
+ *   alone makes are none
  * @returns the peak; always there, `flat` when no direction is stronger than another
  * Source: IEEE Std 145 (major lobe, direction of maximum); parabola: common practice.
  * Checked: tests/outside (A-DIP-LENGTH peak angles), tests/unit/daemon/pattern/peak.test.ts.
  */
-export function peakOf(cut: Cut): Peak {
+export function peakOf(cut: Cut, floorDb?: number): Peak {
   const { anglesDeg, levelDb } = cut;
   let largest = 0;
   let least = 0;
@@ -44,7 +49,8 @@ export function peakOf(cut: Cut): Peak {
     if (levelDb[k]! > levelDb[largest]!) largest = k;
     if (levelDb[k]! < levelDb[least]!) least = k;
   }
-  if (levelDb[largest]! - levelDb[least]! <= flatDb) {
+  const noiseDb = floorDb === undefined ? 0 : levelNoiseDb(levelDb[largest]!, floorDb);
+  if (levelDb[largest]! - levelDb[least]! <= Math.max(flatDb, noiseSpan * noiseDb)) {
     return unrefined(cut, largest, 'the level is the same in all directions', true);
   }
   const plateau = plateauAround(cut, largest);
@@ -53,6 +59,11 @@ export function peakOf(cut: Cut): Peak {
     return unrefined(cut, index, `${plateau.length} neighbours share the largest level`, false);
   }
   return refinedAt(cut, plateau.indices[0] ?? largest, anglesDeg.length);
+}
+
+/** Standard deviation in dB of a level that stands over noise: 8.686 dB × n/(√2·a) for small n/a. */
+function levelNoiseDb(levelDb: number, floorDb: number): number {
+  return (20 / Math.LN10) * (amplitudeRatio(Math.max(lowestLevelDb, Math.min(0, floorDb - levelDb))) / Math.SQRT2);
 }
 
 /**

@@ -6,10 +6,14 @@ import type { FigureEntry } from './figures-document.ts';
 export function entryOf(figure: Figure): FigureEntry {
   switch (figure.kind) {
     case 'value':
-      return { value: figure.value };
+      return { value: figure.value, ...noteOf(figure) };
     case 'bound':
-      return { value: figure.value, bound: figure.bound };
+      return { value: figure.value, bound: figure.bound, ...noteOf(figure) };
     case 'absent':
       return { absent: figure.because };
   }
+}
+
+function noteOf({ note }: { note?: string }): { note?: string } {
+  return note === undefined ? {} : { note };
 }

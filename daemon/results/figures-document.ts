@@ -15,6 +15,10 @@ export const figureEntry = z
           .enum(['upper', 'lower'])
           .optional()
           .describe('Present where only a bound is known; value is then that bound.'),
+        note: z
+          .string()
+          .optional()
+          .describe('What to know before trusting it, such as a level near the floor.'),
       })
       .describe('A figure with its value.'),
     z.strictObject({ absent: z.string() }).describe('No figure, and why.'),

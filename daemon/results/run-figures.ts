@@ -5,6 +5,7 @@ import type { RangeFile } from '../files/range-file.ts';
 import { absentFigure, type Figure } from '../pattern/figure.ts';
 import { cutFigures } from '../pattern/figures.ts';
 import { gainConstantDb, ieeeGainDbi } from '../pattern/gain-transfer.ts';
+import { tieNoiseDb } from '../pattern/tie-noise.ts';
 import { type CutLevels, cutLevels } from './cut-levels.ts';
 import { entryOf } from './figure-entry.ts';
 import { type CutFigures, cutFigureKeys, type FiguresDocument, type Flag } from './figures-document.ts';
@@ -30,10 +31,11 @@ export async function runFigures(
   const frequenciesHz = Array.from(setups[0]?.sweep.frequenciesHz ?? []);
   const plan = run.plan as Plan;
   const reflection = autReflection(run, samples);
+  const floorDb = sweepNoiseDb(samples, frequenciesHz);
   const cuts: CutFigures[] = [];
   const flags: Flag[] = runFlags(setups, segments.length);
   for (const cut of frequenciesHz.length > 0 ? plan.cuts : []) {
-    const levels = cutLevels(samples, cut.name, frequenciesHz);
+    const levels = cutLevels(samples, cut.name, frequenciesHz, floorDb);
     cuts.push(figuresOfCut(run, cut, levels, frequenciesHz, reflection, options));
     flags.push(...cutFlags(plan, cut, levels));
   }
@@ -79,6 +81,18 @@ function head(run: RunRecord, plan: Plan, frequenciesHz: number[]): DocumentHead
 function autReflection(run: RunRecord, samples: readonly SampleRecord[]): Float64Array | undefined {
   const { autPort } = (run.rangeFile as RangeFile).analyzer;
   return meanTrace(samples, autPort === 1 ? 'S11' : 'S22');
+}
+
+/** What repeated sweeps at boresight show of the floor; leakage is not in it. */
+function sweepNoiseDb(
+  samples: readonly SampleRecord[],
+  frequenciesHz: readonly number[],
+): Float64Array | undefined {
+  const visits = samples.filter(({ purpose }) => purpose === 'tie' || purpose === 'reference');
+  return tieNoiseDb(
+    frequenciesHz,
+    visits.flatMap((visit) => visit.traces.get('S21') ?? []),
+  );
 }
 
 function matchPart(
@@ -134,7 +148,11 @@ function rowOfFigures(
       referenceGainDbi: gainReference.realizedGainDbi[k]!,
       referenceLevelDb: gainReference.levelDb[k]!,
     });
-  const figures: FigureRow = cutFigures(cut, constantDb === undefined ? {} : { gainConstantDb: constantDb });
+  const floorDb = levels.floorDb?.[k];
+  const figures: FigureRow = cutFigures(cut, {
+    ...(constantDb === undefined ? {} : { gainConstantDb: constantDb }),
+    ...(floorDb === undefined ? {} : { floorDb }),
+  });
   const realized = figures.realizedGainDbi ?? absentFigure('the run has no gain reference');
   return {
     ...figures,

@@ -5,6 +5,7 @@ import type { BenchTruth } from '../simulated-bench.ts';
 
 interface Entry {
   value?: number;
+  bound?: 'upper' | 'lower';
   absent?: string;
 }
 
@@ -43,22 +44,15 @@ export function compareWithTruth(measured: MeasuredFigures, truth: BenchTruth): 
     const rows = measured.cuts.flatMap(({ name, figures }) => {
       const own = name === 'elevation' ? at.elevation : at.azimuth;
       return cutRows.map(([key, label, of, unit, digits]): Row => {
-        const value = figures[key]?.[index]?.value;
-        return [`${name} ${label}`, value, finite(of(own)), unit, digits];
+        return [`${name} ${label}`, figures[key]?.[index], finite(of(own)), unit, digits];
       });
     });
-    rows.push(['VSWR', measured.match?.vswr[index]?.value, at.vswr, '', 3]);
+    rows.push(['VSWR', measured.match?.vswr[index], at.vswr, '', 3]);
     return `${(at.frequencyHz / 1e6).toFixed(1)} MHz\n${table(rows)}`;
   });
   const match: Row[] = [
-    [
-      'best match',
-      megahertz(measured.match?.bestMatchHz.value),
-      megahertz(truth.match.bestMatchHz),
-      'MHz',
-      3,
-    ],
-    ['resonance', megahertz(measured.match?.resonanceHz.value), megahertz(truth.match.resonanceHz), 'MHz', 3],
+    ['best match', inMegahertz(measured.match?.bestMatchHz), megahertz(truth.match.bestMatchHz), 'MHz', 3],
+    ['resonance', inMegahertz(measured.match?.resonanceHz), megahertz(truth.match.resonanceHz), 'MHz', 3],
   ];
   // An antenna given by a formula is matched everywhere: there is no best frequency to find.
   const isResonant = truth.match.resonanceHz !== undefined;
@@ -72,16 +66,20 @@ function table(rows: readonly Row[]): string {
   const lines = rows
     .filter(([, measured, truth]) => measured !== undefined || truth !== undefined)
     .map(([name, measured, truth, unit, digits]) => {
-      const difference = measured === undefined || truth === undefined ? undefined : measured - truth;
-      const cells = [cell(measured, digits, 10), cell(truth, digits, 10), cell(difference, digits, 12)];
+      const value = measured?.value;
+      const sign = measured?.bound === 'lower' ? '≥ ' : measured?.bound === 'upper' ? '≤ ' : '';
+      const known = value !== undefined && truth !== undefined && sign === '';
+      const difference = known ? cell(value - truth, digits) : '–';
+      const cells = [`${sign}${cell(value, digits)}`.padStart(10), cell(truth, digits).padStart(10)];
+      cells.push(difference.padStart(12));
       return `${name.padEnd(34)}${cells.join('')}  ${unit}`.trimEnd();
     });
   return `${[head, ...lines].join('\n')}\n`;
 }
 
-function cell(value: number | undefined, digits: number, width: number): string {
+function cell(value: number | undefined, digits: number): string {
   const text = value === undefined ? 'none' : value.toFixed(digits).replace(/^-(0\.?0*)$/, '$1');
-  return text.replace('-', '−').padStart(width);
+  return text.replace('-', '−');
 }
 
 function finite(value: unknown): number | undefined {
@@ -90,6 +88,10 @@ function finite(value: unknown): number | undefined {
 
 function megahertz(hz: number | undefined): number | undefined {
   return hz === undefined ? undefined : hz / 1e6;
+}
+
+function inMegahertz(entry: Entry | undefined): Entry | undefined {
+  return entry?.value === undefined ? entry : { ...entry, value: entry.value / 1e6 };
 }
 
 function nearest(frequenciesHz: readonly number[], wantedHz: number): number {

@@ -165,10 +165,11 @@ describe('the figures of a stored run', () => {
     });
     const document = await runFigures(archive!, number);
     // The boresight level is 20 log 0.01 = −40 dB: 2.1 + (−40 + 49) = 11.1 dBi.
-    expect(figure(document, 'realizedGainDbi')).toMatchObject({ value: expect.closeTo(11.1, 6) });
+    // The top of the beam is a curve of the fourth degree: 0.0001 dB on a cosine.
+    expect(figure(document, 'realizedGainDbi')).toMatchObject({ value: expect.closeTo(11.1, 3) });
     // |Γ| = 0.1: mismatch loss −10 log(1 − 0.01) = 0.0436 dB.
-    expect(figure(document, 'gainDbi')).toMatchObject({ value: expect.closeTo(11.1436, 4) });
-    expect(figure(document, 'realizedGainDbi', 0)).toMatchObject({ value: expect.closeTo(12, 6) });
+    expect(figure(document, 'gainDbi')).toMatchObject({ value: expect.closeTo(11.1436, 3) });
+    expect(figure(document, 'realizedGainDbi', 0)).toMatchObject({ value: expect.closeTo(12, 3) });
   });
 
   it('tell the match', async () => {
