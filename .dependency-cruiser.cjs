@@ -49,13 +49,9 @@ module.exports = {
       '^(drivers|daemon|dashboard|tests)/',
       { to: { pathNot: '^drivers/(clock|due-queue|link/(link|memory|tcp))\\.ts$' } },
     ),
-    notFrom(
-      'pattern-is-pure',
-      'Pattern mathematics has no I/O and no state.',
-      '^daemon/pattern/',
-      '.*',
-      { to: { pathNot: '^daemon/pattern/' } },
-    ),
+    notFrom('pattern-is-pure', 'Pattern mathematics has no I/O and no state.', '^daemon/pattern/', '.*', {
+      to: { pathNot: '^daemon/pattern/' },
+    }),
     notFrom(
       'stages-do-not-look-ahead',
       'plan, run, archive and results do not know who shows or schedules them.',

@@ -63,7 +63,9 @@ export function peakOf(cut: Cut, floorDb?: number): Peak {
 
 /** Standard deviation in dB of a level that stands over noise: 8.686 dB × n/(√2·a) for small n/a. */
 function levelNoiseDb(levelDb: number, floorDb: number): number {
-  return (20 / Math.LN10) * (amplitudeRatio(Math.max(lowestLevelDb, Math.min(0, floorDb - levelDb))) / Math.SQRT2);
+  return (
+    (20 / Math.LN10) * (amplitudeRatio(Math.max(lowestLevelDb, Math.min(0, floorDb - levelDb))) / Math.SQRT2)
+  );
 }
 
 /**

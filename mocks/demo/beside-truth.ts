@@ -17,7 +17,7 @@ export interface MeasuredFigures {
 
 type Row = [
   name: string,
-  measured: number | undefined,
+  measured: Entry | undefined,
   truth: number | undefined,
   unit: string,
   digits: number,

@@ -20,8 +20,3 @@ export function multiply(a: Complex, b: Complex): Complex {
 export function squaredMagnitude(z: Complex): number {
   return z.re * z.re + z.im * z.im;
 }
-
-/** Amplitude ratio of a level in dB. */
-export function amplitudeOfDb(levelDb: number): number {
-  return 10 ** (levelDb / 20);
-}
