@@ -13,7 +13,9 @@ import { anyErrorBits, eventBits } from './scpi-status.ts';
 
 const firstPollMs = 2;
 const pollGrowth = 1.5;
+/** Between two polls at most: this, or in a long sweep a twentieth of it, which is what an early end costs. */
 const longestPollMs = 100;
+const longestPollShare = 1 / 20;
 /** Retrace, band switching and settling are often left out of the stated sweep time. */
 const deadlineFactor = 1.5;
 const deadlineSlackMs = 500;
@@ -71,11 +73,13 @@ async function awaitEnd(
 /** Growing pauses, one of which ends just when the sweep should; from there they begin anew, short. */
 function pollPauses(talk: ScpiConversation, expectedEndMs: number): () => number {
   let growingMs = firstPollMs;
+  const expectedMs = expectedEndMs - talk.clock.monotonicMs();
+  const cap = Math.max(longestPollMs, expectedMs * longestPollShare);
   return () => {
     const toEndMs = expectedEndMs - talk.clock.monotonicMs();
     const pauseMs = toEndMs > 0 ? Math.min(growingMs, toEndMs) : growingMs;
     growingMs = toEndMs > 0 && pauseMs >= toEndMs ? firstPollMs : growingMs * pollGrowth;
-    growingMs = Math.min(growingMs, longestPollMs);
+    growingMs = Math.min(growingMs, toEndMs > 0 ? cap : longestPollMs);
     return Math.max(pauseMs, firstPollMs / 2);
   };
 }
