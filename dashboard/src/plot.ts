@@ -1,7 +1,7 @@
 // A plot in the page: one chart per element, redrawn when its option or its size changes.
 import { LineChart } from 'echarts/charts';
 import { GridComponent, LegendComponent, MarkLineComponent, PolarComponent } from 'echarts/components';
-import { init, use } from 'echarts/core';
+import { type EChartsType, init, use } from 'echarts/core';
 import { SVGRenderer } from 'echarts/renderers';
 import { type ComponentChild, h } from 'preact';
 import { useEffect, useRef } from 'preact/hooks';
@@ -11,15 +11,20 @@ use([LineChart, GridComponent, LegendComponent, MarkLineComponent, PolarComponen
 
 export function Plot({ option, label }: { option: PlotOption; label: string }): ComponentChild {
   const element = useRef<HTMLDivElement>(null);
+  const chart = useRef<EChartsType>(undefined);
   useEffect(() => {
-    const chart = init(element.current!, null, { renderer: 'svg' });
-    chart.setOption(option);
-    const sizes = new ResizeObserver(() => chart.resize());
+    const drawn = init(element.current!, null, { renderer: 'svg' });
+    chart.current = drawn;
+    const sizes = new ResizeObserver(() => drawn.resize());
     sizes.observe(element.current!);
     return () => {
       sizes.disconnect();
-      chart.dispose();
+      drawn.dispose();
     };
+  }, []);
+  useEffect(() => {
+    // Nothing of the option before may stay: the next file can have fewer cuts.
+    chart.current?.setOption(option, { notMerge: true });
   }, [option]);
   return h('div', { class: 'plot', ref: element, role: 'img', 'aria-label': label });
 }
