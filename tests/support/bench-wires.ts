@@ -27,6 +27,8 @@ export interface ReachableBench {
   run: <T>(work: Promise<T>, withinMs?: number) => Promise<T>;
   /** Lets so much of the bench's time pass. */
   pass: (ms: number) => Promise<void>;
+  /** Calls `act` once after so much of the bench's time. */
+  later: (ms: number, act: () => void) => void;
   /** Calls `act` again and again, every so many milliseconds of the bench's time, until told to end. */
   every: (ms: number, act: () => void) => () => void;
   close: () => Promise<void>;
@@ -67,6 +69,7 @@ function memoryWire(name: string, options: MemoryPortOptions): Wire {
         link: (device) => ports[device].link(),
         run: (work, withinMs = hangingMs) => clock.run(within(clock, withinMs, work)),
         pass: (ms) => clock.run(clock.sleep(ms)),
+        later: (ms, act) => void clock.at(clock.monotonicMs() + ms, act),
         every: (ms, act) => repeat(clock, ms, act),
         close: () => clock.run(bench.close()),
       };
@@ -86,6 +89,7 @@ async function reachBySockets(description: BenchDescription): Promise<ReachableB
     link: (device) => TcpLink.to('127.0.0.1', ports[device], clock),
     run: (work, withinMs = socketHangingMs) => within(clock, Math.min(withinMs, socketHangingMs), work),
     pass: (ms) => fast.sleep(ms),
+    later: (ms, act) => void fast.at(fast.monotonicMs() + ms, act),
     every: (ms, act) => repeat(fast, ms, act),
     close: () => bench.close(),
   };
