@@ -9,8 +9,8 @@ import type { Device } from './events.ts';
 
 export type Reaction = 'again' | 'reopen' | 'rehome' | 'give-up';
 
-/** For one position: tries of all kinds together. Garbage that recurs is not noise. */
-export const triesPerPosition = 6;
+/** For one position: tries of all kinds together, spread over five minutes. What lasts longer is no burst. */
+export const triesPerPosition = 10;
 /** Reopened or rehomed segments in one run. */
 export const segmentsPerRun = 40;
 /** How long a device may stay away; analyzers need up to three minutes to boot. */
@@ -47,7 +47,7 @@ const reactions: Readonly<Record<DriverErrorCode, Reaction>> = {
   POSITIONER_WRONG_PLACE: 'again',
   POSITIONER_OUTSIDE_TRAVEL: 'give-up',
   POSITIONER_STOPPED: 'give-up',
-  POSITIONER_STOP_UNCONFIRMED: 'give-up',
+  POSITIONER_STOP_UNCONFIRMED: 'rehome',
 };
 
 /** A lost link to the controller costs the reference; one to the analyzer does not. */
@@ -58,6 +58,6 @@ export function reactionTo(code: DriverErrorCode, device: Device): Reaction {
 
 /** Wait before the n-th retry (1, 2, …): a burst of interference or a tripped switch gets time to pass. */
 export function waitBeforeRetryMs(retry: number): number {
-  const waitsMs = [200, 1_000, 3_000, 10_000, 30_000];
-  return waitsMs[Math.min(retry, waitsMs.length) - 1] ?? 30_000;
+  const waitsMs = [200, 1_000, 3_000, 10_000, 30_000, 60_000];
+  return waitsMs[Math.min(retry, waitsMs.length) - 1] ?? 60_000;
 }

@@ -2,9 +2,10 @@
 // It alone commands motion. At most one sample waits to become durable while the axes move on; the next
 // sweep starts only when it is. Whatever happens, it ends with motors still and the source off.
 //
-//   connect ─► createRun ─► segment 1 ─► step ─► step ─► … ─► safe stop ─► endRun
-//                              ▲          │ failure
-//                              └─ reopen ─┴─ again ── give up ─► safe stop ─► endRun
+//   connect ─► createRun ─► step ─► step ─► … ─► safe stop ─► endRun
+//                           │  ▲
+//        a segment is due ──┤  └─ again ── failure ── give up ─► safe stop ─► endRun
+//        (start, reopened)  └─► devices back, homed, tied
 import { type Observable, Subject } from 'rxjs';
 import type { SweepSetup } from '../../drivers/analyzer/analyzer.ts';
 import type { Clock } from '../../drivers/clock.ts';
@@ -14,7 +15,7 @@ import type { Archive, NewRun, RunRef, RunState, SampleRecord } from '../archive
 import { DaemonError } from '../errors.ts';
 import type { PlannedStep } from '../plan/expand.ts';
 import type { Device, RunEvent } from './events.ts';
-import { measurePosition, type PositionTools, StepFailure } from './measure-position.ts';
+import { from, measurePosition, type PositionTools, StepFailure } from './measure-position.ts';
 import { reactionTo, segmentsPerRun, triesPerPosition, waitBeforeRetryMs } from './retry-table.ts';
 import { type Bench, safeStop } from './safe-stop.ts';
 import { type Connected, connect, openSegment, type SegmentTools, waitForDevice } from './segments.ts';
@@ -41,6 +42,12 @@ export interface RunOutcome {
   unconfirmed: unknown[];
 }
 
+/** Why a segment must be opened, and the devices that have to be met anew before. */
+interface DueSegment {
+  reason: string;
+  away: Set<Device>;
+}
+
 export class RunLoop {
   readonly #bench: Bench;
   readonly #archive: Archive;
@@ -52,6 +59,8 @@ export class RunLoop {
   #connected: Connected | undefined;
   #segment = 0;
   #sequence = 0;
+  /** The segment that must be opened before the next sample; at first the run's own. */
+  #due: DueSegment | undefined = { reason: 'start', away: new Set() };
   /** The one sample that may still be on its way to the disk. */
   #pending: Promise<void> = Promise.resolve();
 
@@ -101,7 +110,6 @@ export class RunLoop {
     const left = timeLeft(predictedMs);
     const expectedMs = predictedMs.reduce((sum, ms) => sum + ms, 0);
     this.#tell({ kind: 'started', run, steps: steps.length, expectedMs });
-    await this.#newSegment('start', signal);
     const startMs = this.#clock.monotonicMs();
     for (const [index, step] of steps.entries()) {
       const sample = await this.#takeStep(step, signal);
@@ -114,12 +122,19 @@ export class RunLoop {
   /** One position, with as many tries as the retry table allows. */
   async #takeStep(step: PlannedStep, signal: AbortSignal): Promise<SampleRecord> {
     let revisit = false;
+    // A segment that opened, with its tie, shows that both devices work: tries count from there.
+    let tries = 0;
     for (let attempt = 1; ; attempt += 1) {
       try {
+        if (this.#due) {
+          revisit = (await this.#openDueSegment(this.#due, step, signal)) || revisit;
+          tries = 0;
+        }
         return await this.#sample(step, attempt, revisit, signal);
       } catch (failure) {
         if (!(failure instanceof StepFailure) || signal.aborted) throw failure;
-        revisit = await this.#afterFailure(failure, step, attempt, signal);
+        tries += 1;
+        revisit = await this.#afterFailure(failure, step, tries, signal);
       }
     }
   }
@@ -147,56 +162,59 @@ export class RunLoop {
   async #afterFailure(
     failure: StepFailure,
     step: PlannedStep,
-    attempt: number,
+    tries: number,
     signal: AbortSignal,
   ): Promise<boolean> {
     const error = failure.cause;
     if (!isDriverError(error)) throw error;
     const reaction = reactionTo(error.code, failure.device);
     if (reaction === 'give-up' || (reaction === 'rehome' && !this.#canRehome())) throw error;
-    if (attempt >= triesPerPosition) {
+    if (tries >= triesPerPosition) {
       throw new DaemonError(
         'RUN_GAVE_UP',
-        `${attempt} tries at ${step.cut || 'boresight'} ${step.angleDeg}° failed; the last: ${error.message}`,
-        { code: error.code, tries: attempt, ...error.facts },
+        `${tries} tries at ${step.cut || 'boresight'} ${step.angleDeg}° failed; the last: ${error.message}`,
+        { code: error.code, tries, ...error.facts },
         error,
       );
     }
-    const waitMs = waitBeforeRetryMs(attempt);
+    const waitMs = waitBeforeRetryMs(tries);
     const { device } = failure;
     const text = factsText(error.message, error.facts);
-    await this.#note('retry', text, { device, code: error.code, attempt, ...error.facts });
-    this.#tell({ kind: 'retry', device, code: error.code, text: error.message, attempt, waitMs });
+    await this.#note('retry', text, { device, code: error.code, attempt: tries, ...error.facts });
+    this.#tell({ kind: 'retry', device, code: error.code, text: error.message, attempt: tries, waitMs });
     await this.#clock.sleep(waitMs, signal);
     if (reaction === 'again') return device === 'positioner';
-    await this.#reopen(device, `${device}: ${error.code}`, step, signal);
+    this.#due ??= { reason: `${device}: ${error.code}`, away: new Set() };
+    this.#due.away.add(device);
     return true;
   }
 
-  /** A new segment after an interruption: session proven, axes homed if their reference went, and a tie. */
-  async #reopen(device: Device, reason: string, step: PlannedStep, signal: AbortSignal): Promise<void> {
-    if (this.#segment >= segmentsPerRun) {
-      throw new DaemonError('RUN_GAVE_UP', `${this.#segment} interruptions in one run`, { reason });
-    }
-    await waitForDevice(this.#tools, device, signal);
-    await this.#newSegment(reason, signal);
-    const tie: PlannedStep = { ...step, purpose: 'tie', angleDeg: 0, target: this.#order.boresight };
-    try {
-      const sample = await this.#sample(tie, 1, true, signal);
-      this.#store(sample);
-    } catch (failure) {
-      // The step's own next try meets the same trouble and counts it.
-      if (!(failure instanceof StepFailure)) throw failure;
-      await this.#note('trouble', `no tie at the start of segment ${this.#segment}: ${failure.message}`, {});
-    }
-  }
-
-  async #newSegment(reason: string, signal: AbortSignal): Promise<void> {
+  /**
+   * Opens the segment that is due: sessions proven, axes homed if their reference went, and after an
+   * interruption a tie. It stays due until all of that has succeeded. True when axes may have moved.
+   */
+  async #openDueSegment(due: DueSegment, step: PlannedStep, signal: AbortSignal): Promise<boolean> {
     const { run, connected } = this.#open();
+    if (this.#segment >= segmentsPerRun) {
+      throw new DaemonError('RUN_GAVE_UP', `${this.#segment} interruptions in one run`, {
+        reason: due.reason,
+      });
+    }
+    for (const device of due.away) {
+      await from(device, waitForDevice(this.#tools, device, signal));
+      due.away.delete(device);
+    }
     await this.#durable();
+    const isFirst = this.#segment === 0;
     this.#segment += 1;
-    await this.#note('segment', reason, { segment: this.#segment });
-    await openSegment(this.#tools, run.number, this.#segment, reason, connected, signal);
+    await this.#note('segment', due.reason, { segment: this.#segment });
+    await openSegment(this.#tools, run.number, this.#segment, due.reason, connected, signal);
+    if (due.reason !== 'start') {
+      const tie: PlannedStep = { ...step, purpose: 'tie', angleDeg: 0, target: this.#order.boresight };
+      await this.#store(await this.#sample(tie, 1, true, signal));
+    }
+    this.#due = undefined;
+    return !isFirst;
   }
 
   /** Only axes with a home switch can find their angle again without a person. */

@@ -4,7 +4,7 @@
 import type { AnalyzerIdentity, PreparedSweep, SweepSetup } from '../../drivers/analyzer/analyzer.ts';
 import type { Clock } from '../../drivers/clock.ts';
 import { isDriverError } from '../../drivers/errors.ts';
-import type { ControllerIdentity } from '../../drivers/positioner/positioner.ts';
+import type { ControllerIdentity, Positioner } from '../../drivers/positioner/positioner.ts';
 import type { Archive } from '../archive/archive.ts';
 import type { Device, RunEvent } from './events.ts';
 import { from } from './measure-position.ts';
@@ -71,7 +71,7 @@ export async function waitForDevice(
   for (let waitMs = 500; ; waitMs = Math.min(2 * waitMs, 20_000)) {
     try {
       if (device === 'analyzer') await bench.analyzer.recover(signal);
-      else await bench.positioner.identify(signal);
+      else await meetAgain(bench.positioner, signal);
       tell({ kind: 'recovered', device, text: `the ${device} answers again` });
       return;
     } catch (error) {
@@ -82,4 +82,10 @@ export async function waitForDevice(
       await clock.sleep(waitMs, signal);
     }
   }
+}
+
+/** A move of ours may still be going on while we were away: it is stopped before anything is asked. */
+async function meetAgain(positioner: Positioner, signal: AbortSignal): Promise<void> {
+  await positioner.stop();
+  await positioner.identify(signal);
 }

@@ -8,6 +8,7 @@ import type { RunEvent } from '../../daemon/run/events.ts';
 import { orderRun } from '../../daemon/run/order-run.ts';
 import { RunLoop, type RunOutcome } from '../../daemon/run/run-loop.ts';
 import type { MemoryPort, MemoryPortOptions } from '../../drivers/link/memory.ts';
+import type { Mechanics } from '../../mocks/positioner/mechanics.ts';
 import { type BenchDescription, SimulatedBench } from '../../mocks/simulated-bench.ts';
 import { SimulatedClock } from '../../mocks/simulated-clock.ts';
 
@@ -16,6 +17,8 @@ export interface RangeOptions {
   /** Home switches on both axes; else the controller's zero is believed. */
   homing?: 'switch' | 'none';
   trace?: string;
+  /** Gear play of both axes in degrees. */
+  gearPlayDeg?: number;
   wire?: MemoryPortOptions;
 }
 
@@ -29,7 +32,11 @@ export class SimulatedRange {
   constructor(options: RangeOptions) {
     this.bench = new SimulatedBench(this.clock, {
       ...options.bench,
-      positioner: { settings: controllerSettings(options.homing), ...options.bench.positioner },
+      positioner: {
+        settings: controllerSettings(options.homing),
+        mechanics: stageMechanics(options),
+        ...options.bench.positioner,
+      },
     });
     this.#ports = this.bench.listenInMemory(options.wire ?? {});
     let uuids = 0;
@@ -67,11 +74,20 @@ function controllerSettings(homing: RangeOptions['homing']): Record<number, numb
   return { ...Object.fromEntries(perAxis), 22: homing === 'switch' ? 1 : 0 };
 }
 
+/** Where boresight is in the controller's count: homed to switches at +200°, it counts down from zero. */
+export const homedBoresightDeg = -200;
+
+function stageMechanics({ homing, gearPlayDeg = 0 }: RangeOptions): Mechanics {
+  const axis = { playUnits: gearPlayDeg, ...(homing === 'switch' ? { switchUnits: 200 } : {}) };
+  return { X: axis, Y: axis };
+}
+
 function rangeText(options: RangeOptions): string {
+  const homed = options.homing === 'switch';
   const axis = (word: string): string => `
       word: ${word}
       unitsPerDegree: 1
-      travel: { min: -200 deg, max: 200 deg }
+      travel: ${homed ? '{ min: -398 deg, max: -2 deg }' : '{ min: -200 deg, max: 200 deg }'}
       rate: 20 deg/s
       acceleration: 40 deg/s2
       approach: { from: below, by: 2 deg }
@@ -79,7 +95,7 @@ function rangeText(options: RangeOptions): string {
       tolerance: 0.05 deg
       homing: ${options.homing ?? 'none'}
       sense: +1
-      boresight: 0 deg`;
+      boresight: ${homed ? homedBoresightDeg : 0} deg`;
   return `
 range: test meadow
 rangeLength: 6 m
