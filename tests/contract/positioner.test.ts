@@ -447,10 +447,13 @@ async function movesStruck(rig: Rig, name: string, when: string, strike: () => v
   return failed;
 }
 
-/** What each fault may lead to. A late answer is taken for the next one's: the read-back finds it out. */
+/**
+ * What each fault may lead to; the first is sure to come. A late answer may be taken for that to the next line:
+ * the read-back finds it out.
+ */
 const felt: Readonly<Record<string, readonly string[]>> = {
   'positioner-link-drop': ['LINK_CLOSED'],
-  'late-ok': ['POSITIONER_WRONG_PLACE'],
+  'late-ok': ['POSITIONER_WRONG_PLACE', 'POSITIONER_NOT_ANSWERING'],
   restart: ['POSITIONER_RESTARTED'],
   alarm: ['POSITIONER_ALARM'],
   'hold-pressed': ['POSITIONER_HELD'],
@@ -476,10 +479,10 @@ describe.each(wires.filter((wire) => wire.kind === 'memory'))(
     const momentsMs = Array.from({ length: Math.floor(6000 / strideMs) }, (_, i) => 1 + i * strideMs);
 
     it.each(strikes)('%s: an error with a code or a true arrival, never a hang', async (name) => {
-      const failed = new Set(await struckAt(wire, name, momentsMs));
+      const failed = await struckAt(wire, name, momentsMs);
       const expected = felt[name] ?? [];
-      if (wire.name === 'memory') expect([...failed]).toEqual(expected);
-      else expect(expected).toEqual(expect.arrayContaining([...failed]));
+      expect(expected).toEqual(expect.arrayContaining([...new Set(failed)]));
+      if (wire.name === 'memory') expect(failed.slice(0, 1)).toEqual(expected.slice(0, 1));
     });
   },
 );
