@@ -179,9 +179,9 @@ export class RunLoop {
     }
     const waitMs = waitBeforeRetryMs(tries);
     const { device } = failure;
-    const text = factsText(error.message, error.facts);
-    await this.#note('retry', text, { device, code: error.code, attempt: tries, ...error.facts });
-    this.#tell({ kind: 'retry', device, code: error.code, text: error.message, attempt: tries, waitMs });
+    const { code, message: text, facts } = error;
+    await this.#note('retry', text, { device, code, attempt: tries, ...facts });
+    this.#tell({ kind: 'retry', device, code, text, facts, attempt: tries, waitMs });
     await this.#clock.sleep(waitMs, signal);
     if (reaction === 'again') return device === 'positioner';
     this.#due ??= { reason: `${device}: ${error.code}`, away: new Set() };
@@ -301,9 +301,4 @@ function stateAfter(error: unknown): 'interrupted' | 'failed' {
 
 function messageOf(error: unknown): string {
   return error instanceof Error ? error.message : String(error);
-}
-
-function factsText(message: string, facts: Readonly<Record<string, unknown>>): string {
-  const bytes = facts['bytesHex'];
-  return typeof bytes === 'string' ? `${message} [${bytes}]` : message;
 }

@@ -78,7 +78,8 @@ export async function waitForDevice(
       signal.throwIfAborted();
       const hopeless = !isDriverError(error) || reactionTo(error.code, device) === 'give-up';
       if (hopeless || clock.monotonicMs() + waitMs > givingUpMs) throw error;
-      tell({ kind: 'retry', device, code: error.code, text: error.message, attempt: 0, waitMs });
+      const { code, message: text, facts } = error;
+      tell({ kind: 'retry', device, code, text, facts, attempt: 0, waitMs });
       await clock.sleep(waitMs, signal);
     }
   }
