@@ -25,16 +25,18 @@ export async function runCommandLine(args: readonly string[], outside: Surroundi
   addMeasureCommand(program, outside, finish);
   addRunsCommands(program, outside, finish);
   for (const command of program.commands) command.exitOverride().copyInheritedSettings(program);
-  if (args.length === 0) {
-    outside.stderr.write(program.helpInformation());
-    return exitCodes.badInput;
-  }
   try {
+    if (args.length === 0) throw new DaemonError('USAGE_WRONG', nothingAsked(program));
     await program.parseAsync([...args], { from: 'user' });
     return exitCode;
   } catch (error) {
     return reportError(error, args, outside);
   }
+}
+
+function nothingAsked(program: Command): string {
+  const names = program.commands.map((command) => command.name());
+  return `say what to do: ${names.join(', ')}; nightcut --help tells more`;
 }
 
 function reportError(thrown: unknown, args: readonly string[], outside: Surroundings): ExitCode {

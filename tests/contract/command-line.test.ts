@@ -227,6 +227,13 @@ describe('mistakes are found before anything is done', () => {
     await expectRefusal(['measure', '--fast'], 'USAGE_WRONG', /--fast/);
   });
 
+  it('no arguments: one line that says what there is', async () => {
+    const { exitCode, out, err } = await desk.run([]);
+    expect(err).toMatch(/^nightcut: [^\n]*measure[^\n]*runs[^\n]*show[^\n]*\n$/);
+    expect(out).toBe('');
+    expect(exitCode).toBe(2);
+  });
+
   it('an archive that is not there', async () => {
     await expectRefusal(['show', '1'], 'FILE_UNREADABLE', /there is no archive here/);
     await expectRefusal(['runs'], 'FILE_UNREADABLE', /there is no archive here/);
