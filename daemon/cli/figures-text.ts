@@ -1,7 +1,7 @@
 // The document `figures/1` as text for people: one table per marker frequency, figures down, cuts across.
 // Says nothing that the document does not hold.
 import type { CutFigureKey, FigureEntry, FiguresDocument } from '../results/figures-document.ts';
-import { printable, renderMegahertz, renderTable } from './terminal.ts';
+import { printable, renderMegahertz, renderNumber, renderTable } from './terminal.ts';
 
 const labels: Readonly<Record<CutFigureKey, [label: string, unit: string, digits: number]>> = {
   realizedGainDbi: ['realized gain', 'dBi', 2],
@@ -92,7 +92,7 @@ function renderFrequency({ frequenciesHz, cuts }: FiguresDocument, index: number
 function renderEntry(entry: Exclude<FigureEntry, { absent: string }>, digits: number): string {
   const sign = entry.bound === 'upper' ? '≤ ' : entry.bound === 'lower' ? '≥ ' : '';
   const spread = entry.U === undefined ? '' : ` ± ${entry.U.toFixed(digits)}`;
-  return `${sign}${entry.value.toFixed(digits)}${spread}`.replace('-', '−');
+  return `${sign}${renderNumber(entry.value, digits)}${spread}`;
 }
 
 function renderMatch(document: FiguresDocument, match: NonNullable<FiguresDocument['match']>): string {

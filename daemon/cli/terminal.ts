@@ -30,6 +30,12 @@ export function renderDuration(ms: number): string {
   return `${seconds} s`;
 }
 
+/** Fixed digits with a true minus sign; what rounds to zero has none. */
+export function renderNumber(value: number, digits: number): string {
+  const text = value.toFixed(digits);
+  return Number(text) === 0 ? text.replace('-', '') : text.replace('-', '−');
+}
+
 export function renderMegahertz(frequencyHz: number): string {
   const text = (frequencyHz / 1e6).toFixed(3);
   return text.replace(/\.?0+$/, '');
