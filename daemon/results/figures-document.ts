@@ -1,6 +1,7 @@
 // The document `figures/1`: what other programs may rely on. The schema here is the documentation; the
 // JSON Schema in the repository is generated from it, and a gate compares the two.
 import { z } from 'zod';
+import { cutFigureKeys as patternFigureKeys } from '../pattern/figures.ts';
 
 /** One figure at one frequency: a value, a bound, or the reason why there is none. */
 export const figureEntry = z
@@ -29,18 +30,9 @@ export type FigureEntry = z.infer<typeof figureEntry>;
 
 const perFrequency = z.array(figureEntry).describe('One entry per frequency, in the order of frequenciesHz.');
 
+/** Those of the pattern itself, and those that need more than the pattern. */
 export const cutFigureKeys = [
-  'peakDeg',
-  'halfPowerBeamwidthDeg',
-  'tenDbBeamwidthDeg',
-  'firstNullBeamwidthDeg',
-  'squintDeg',
-  'frontToBackDb',
-  'frontToRearDb',
-  'firstSideLobeLeftDb',
-  'firstSideLobeRightDb',
-  'sideLobeLevelDb',
-  'circularityDb',
+  ...patternFigureKeys,
   'realizedGainDbi',
   'gainDbi',
   'closureDb',
