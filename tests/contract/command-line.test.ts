@@ -223,6 +223,15 @@ describe('mistakes are found before anything is done', () => {
     expect(desk.visitors).toBe(0);
   });
 
+  it('a reference run on a range that names no reference antenna', async () => {
+    await desk.write('range.yaml', desk.rangeText().replace(/ {2}reference:\n.*(?=archive:)/s, ''));
+    await expectRefusal(
+      ['measure', desk.path('reference.plan.yaml')],
+      'REFERENCE_MISSING',
+      /names no reference antenna/,
+    );
+  });
+
   it('usage as a document for programs', async () => {
     await expectRefusal(['measure', '--fast'], 'USAGE_WRONG', /--fast/);
   });
@@ -265,6 +274,16 @@ describe('what the archive does not have', () => {
       await desk.write('pattern.plan.yaml', patternPlanText(changes));
       const refused = await desk.run(['measure', desk.path('pattern.plan.yaml'), '--json']);
       expect(refused).toMatchObject({ exitCode: 2, err: expect.stringMatching(/^nightcut: [^\n]+\n$/) });
+      expect(JSON.parse(refused.out)).toMatchObject({ code });
+    }
+    // A reference belongs to the site it was taken on.
+    await desk.write('range.yaml', desk.rangeText().replace('test meadow', 'other meadow'));
+    for (const [gainReference, code] of [
+      ['1', 'REFERENCE_DOES_NOT_FIT'],
+      ['latest', 'REFERENCE_MISSING'],
+    ] as const) {
+      await desk.write('pattern.plan.yaml', patternPlanText({ gainReference }));
+      const refused = await desk.run(['measure', desk.path('pattern.plan.yaml'), '--json']);
       expect(JSON.parse(refused.out)).toMatchObject({ code });
     }
     expect(desk.visitors).toBe(visitors);

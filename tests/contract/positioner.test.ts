@@ -225,7 +225,24 @@ describe.each(wires)('a positioner over $name', (wire) => {
     }
   });
 
-  it('stops what is asked to move next, and is none the worse for a stop at rest', async () => {
+  it('brings a move to rest when its caller gives it up', async () => {
+    const rig = await readyOn(wire, withPlay, [azimuth]);
+    const { at, positioner } = rig;
+    const patience = new AbortController();
+    const given = positioner
+      .moveTo({ azimuth: 180 }, { signal: patience.signal })
+      .catch((error: unknown) => error);
+    await at.pass(2000);
+    const reason = new Error('the caller has had enough');
+    patience.abort(reason);
+    expect(await at.run(given)).toBe(reason);
+    expect(rig.shaftDeg()[0]).toBeLessThan(179);
+    await expectRest(rig);
+    await travelTo(rig, { azimuth: 12 });
+    expect(Math.abs(rig.shaftDeg()[0]! - 12)).toBeLessThanOrEqual(halfStepDeg + 1e-9);
+  });
+
+  it('is none the worse for a stop at rest', async () => {
     const rig = await readyOn(wire, withPlay, [azimuth]);
     const { at, positioner } = rig;
     await travelTo(rig, { azimuth: 30 });
