@@ -16,9 +16,7 @@ const pollGrowth = 1.5;
 /** Between two polls at most: this, or in a long sweep a twentieth of it, which is what an early end costs. */
 const longestPollMs = 100;
 const longestPollShare = 1 / 20;
-/** Retrace, band switching and settling are often left out of the stated sweep time. */
 const deadlineFactor = 1.5;
-const deadlineSlackMs = 500;
 
 export interface SweepRun {
   startMonotonicMs: number;
@@ -58,7 +56,7 @@ async function awaitEnd(
   answerTimeoutMs: number,
 ): Promise<void> {
   const begunMs = startedMs.at(-1) ?? talk.clock.monotonicMs();
-  const deadlineMs = begunMs + sweep.acquisitionMs * deadlineFactor + deadlineSlackMs;
+  const deadlineMs = begunMs + sweep.acquisitionMs * deadlineFactor + sweep.slackMs;
   const pause = pollPauses(talk, begunMs + sweep.passMs * sweep.passesPerStart);
   for (;;) {
     await talk.sleep(pause());

@@ -12,6 +12,7 @@ import {
   decodeBoolean,
   decodeNumberList,
   decodeSetting,
+  decodeStated,
   decodeWord,
   excerpt,
   hexOf,
@@ -78,6 +79,11 @@ export class ScpiConversation {
 
   askNumber(name: TemplateName, values: Substitutions = {}): Promise<number> {
     return this.#askDecoded(this.#message(name, values), decodeSetting);
+  }
+
+  /** A number that the instrument may have none for: undefined then. */
+  askStated(name: TemplateName): Promise<number | undefined> {
+    return this.#askDecoded(this.#message(name, {}), decodeStated);
   }
 
   askBoolean(name: TemplateName, values: Substitutions = {}): Promise<boolean> {

@@ -78,7 +78,10 @@ export interface ScpiDialect {
    * `whole-average`: the instrument sweeps N times by itself. Without meaning where it averages by point.
    */
   readonly oneStartRuns: 'one-sweep' | 'whole-average';
-  /** Commands that an instrument may refuse as unknown (−113) without harm. */
+  /**
+   * Optional commands that an instrument may refuse as unknown (−113) without harm, and optional queries that
+   * are left out once it has: what they would have confirmed is then proven otherwise, or taken as sent.
+   */
   readonly mayBeUnknown: readonly TemplateName[];
 }
 
@@ -92,7 +95,17 @@ const numberedParameter: ScpiDialect = {
   name: 'numbered-parameter',
   channel: 1,
   oneStartRuns: 'one-sweep',
-  mayBeUnknown: ['triggerImmediate', 'sweepTypeLinear', 'averagingByPoint'],
+  mayBeUnknown: [
+    'triggerImmediate',
+    'sweepTypeLinear',
+    'averagingByPoint',
+    'averagingModeQuery',
+    'sweepTimeQuery',
+    'frequencyAxisQuery',
+    'continuousQuery',
+    'byteOrderQuery',
+    'correctionQuery',
+  ],
   templates: {
     startFrequency: ':SENS{channel}:FREQ:STAR {value}',
     startFrequencyQuery: ':SENS{channel}:FREQ:STAR?',
@@ -153,6 +166,18 @@ export function dialectNamed(name: string): ScpiDialect {
     `there is no dialect '${name}'; there is ${dialectNames.join(', ')}`,
     { dialect: name },
   );
+}
+
+/** The same dialect without the optional query that reads `message`; undefined where it has to be known. */
+export function withoutQuery(dialect: ScpiDialect, message: string): ScpiDialect | undefined {
+  const name = dialect.mayBeUnknown.find((each) => {
+    const template = dialect.templates[each];
+    if (!each.endsWith('Query') || template === undefined) return false;
+    return fillTemplate(template, { channel: dialect.channel })[0] === message;
+  });
+  if (name === undefined) return undefined;
+  const { [name]: _, ...templates } = dialect.templates;
+  return { ...dialect, templates: templates as ScpiTemplates };
 }
 
 export type Substitutions = Readonly<Record<string, string | number>>;

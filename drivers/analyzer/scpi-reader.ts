@@ -1,16 +1,23 @@
 // Bytes of the instrument to one answer, pure and incremental: the pieces may be cut anywhere. A text ends
-// with a line feed; a definite block `#d…` has its length in front and may hold line feeds as data, so
-// that the two are never read by the same rule. Knows no time and no link.
+// with a line feed (a few instruments: with a carriage return); a definite block `#d…` has its length in front and may hold both as
+// data, so that the two are never read by the same rule. Knows no time and no link.
 //
-//   text   leading white space ─► bytes up to LF, a CR before it dropped
-//   block  leading white space ─► '#' ─► digit d ─► d digits = length ─► that many bytes
+//   text   silence ─► [ header of the question, blank ] ─► bytes up to LF, or a CR that is the last for now
+//   block  silence ─► [ header of the question, blank ] ─► '#' ─► digit d ─► d digits = length ─► that many bytes
 //
-// The line end behind a block is not waited for (some instruments send none): what is left of it is the
-// leading white space of the next answer.
-import { hexOf } from './scpi-values.ts';
+// The line end behind a block is not waited for (some instruments send none): what is left of it, as of CR LF
+// behind a text, is the silence ahead of the next answer.
+import { hexOf, isHeaderOf } from './scpi-values.ts';
 
-/** What the question that was asked is answered with; `maxBytes` bounds what the reader will keep. */
-export type Expected = { kind: 'text'; maxBytes: number } | { kind: 'block'; maxBytes: number };
+/**
+ * What the question that was asked is answered with; `maxBytes` bounds what the reader will keep. With the
+ * `question` its header is taken off the answer, where the instrument prints it.
+ */
+export interface Expected {
+  kind: 'text' | 'block';
+  maxBytes: number;
+  question?: string;
+}
 
 export type ReaderNews =
   | { kind: 'more' }
@@ -28,16 +35,30 @@ const carriageReturn = 0x0d;
 const hash = 0x23;
 const more: ReaderNews = { kind: 'more' };
 
-/** Bytes that say nothing between two answers: the rest of a line end, blanks. */
+/** Bytes that say nothing between two answers: the rest of a line end, blanks, the NUL that pads a block. */
 export function isSilence(byte: number): boolean {
-  return byte === lineFeed || byte === carriageReturn || byte === 0x20 || byte === 0x09;
+  return byte === lineFeed || byte === carriageReturn || byte === 0x20 || byte === 0x09 || byte === 0;
 }
 
 function digitOf(byte: number): number | undefined {
   return byte >= 0x30 && byte <= 0x39 ? byte - 0x30 : undefined;
 }
 
-type Stage = 'start' | 'text' | 'digits' | 'length' | 'data' | 'done';
+/** Where a text ends: at a line feed, or at a carriage return behind which nothing came; −1 for not yet. */
+function lineEndIn(piece: Uint8Array): number {
+  const feed = piece.indexOf(lineFeed);
+  if (feed >= 0) return feed;
+  return piece.at(-1) === carriageReturn ? piece.length - 1 : -1;
+}
+
+/** A letter, or the colon or asterisk ahead of one. */
+function beginsHeader(byte: number): boolean {
+  return /^[A-Za-z:*]$/.test(String.fromCharCode(byte));
+}
+
+type Stage = 'start' | 'header' | 'text' | 'digits' | 'length' | 'data' | 'done';
+
+const longestHeader = 64;
 
 /** Reads one answer; a new reader is made for each question. */
 export class ScpiReader {
@@ -77,6 +98,8 @@ export class ScpiReader {
     switch (this.#stage) {
       case 'start':
         return isSilence(byte) ? more : this.#begin(byte);
+      case 'header':
+        return this.#takeHeader(byte);
       case 'digits':
         return this.#takeDigits(byte);
       case 'length':
@@ -93,17 +116,36 @@ export class ScpiReader {
       return more;
     }
     if (byte !== hash) {
-      return this.#unreadable(
-        'a block was asked for and something else came: an old answer, or the trace format was changed',
-      );
+      if (this.#expected.question === undefined || !beginsHeader(byte)) return this.#noBlock();
+      this.#stage = 'header';
+      this.#text = String.fromCharCode(byte);
+      return more;
     }
     this.#stage = 'digits';
     return more;
   }
 
+  #takeHeader(byte: number): ReaderNews {
+    if (byte === hash) {
+      if (!isHeaderOf(this.#expected.question ?? '', this.#text.trimEnd())) return this.#noBlock();
+      this.#stage = 'digits';
+      return more;
+    }
+    const printable = byte >= 0x20 && byte < 0x7f;
+    if (!printable || this.#text.length >= longestHeader) return this.#noBlock();
+    this.#text += String.fromCharCode(byte);
+    return more;
+  }
+
+  #noBlock(): ReaderNews {
+    return this.#unreadable(
+      'a block was asked for and something else came: an old answer, or the trace format was changed',
+    );
+  }
+
   /** Latin-1: identities and error texts carry signs beyond ASCII, and no byte may be lost. */
   #takeText(bytes: Uint8Array): ReaderNews {
-    const end = bytes.indexOf(lineFeed);
+    const end = lineEndIn(bytes);
     const line = end < 0 ? bytes : bytes.subarray(0, end);
     // A block where a line is expected: its data would be taken for lines.
     if (this.#text === '#' && line[0] !== undefined && digitOf(line[0]) !== undefined) {
@@ -115,7 +157,18 @@ export class ScpiReader {
     this.#text += Buffer.from(line).toString('latin1');
     if (end < 0) return more;
     this.#stage = 'done';
-    return { kind: 'text', text: this.#text.replace(/\r+$/, ''), rest: bytes.subarray(end + 1) };
+    return {
+      kind: 'text',
+      text: this.#withoutHeader(this.#text.replace(/\r+$/, '')),
+      rest: bytes.subarray(end + 1),
+    };
+  }
+
+  #withoutHeader(text: string): string {
+    const blank = text.indexOf(' ');
+    const { question } = this.#expected;
+    if (question === undefined || blank < 0 || !isHeaderOf(question, text.slice(0, blank))) return text;
+    return text.slice(blank + 1);
   }
 
   #takeDigits(byte: number): ReaderNews {

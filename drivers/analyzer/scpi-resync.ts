@@ -9,7 +9,7 @@
 // The registers are read before *CLS, for it would wipe out both the news of a power cycle and the reason
 // why a question was refused.
 import type { Clock } from '../clock.ts';
-import { DriverError } from '../errors.ts';
+import { DriverError, isDriverError } from '../errors.ts';
 import type { AnalyzerIdentity } from './analyzer.ts';
 import { eventBits } from './scpi-status.ts';
 import {
@@ -34,6 +34,8 @@ export interface SessionOpening {
 export interface ProofOptions {
   errorQuery: string;
   answerTimeoutMs: number;
+  /** Where the first question is not answered it is asked again until then; 0: asked once. */
+  patienceMs: number;
   urgent: readonly string[];
   signal: AbortSignal | undefined;
 }
@@ -57,7 +59,7 @@ export async function proveStep(
   for (const message of options.urgent) await wire.shout(message);
   await clock.sleep(quietMs, signal);
   wire.attend('proving');
-  const talk = new ProvingTalk(wire, options);
+  const talk = new ProvingTalk(wire, clock, options);
   let identity = await talk.firstIdentity();
   const strayLines = await talk.proveMarker(markers[0], linesAtMost);
   await talk.proveMarker(markers[1], 1);
@@ -75,10 +77,12 @@ export async function proveStep(
 
 class ProvingTalk {
   readonly #wire: ScpiWire;
+  readonly #clock: Clock;
   readonly #options: ProofOptions;
 
-  constructor(wire: ScpiWire, options: ProofOptions) {
+  constructor(wire: ScpiWire, clock: Clock, options: ProofOptions) {
     this.#wire = wire;
+    this.#clock = clock;
     this.#options = options;
   }
 
@@ -127,17 +131,31 @@ class ProvingTalk {
   }
 
   async #firstAnswer(message: string): Promise<string> {
-    try {
-      return await this.#text(message);
-    } catch (error) {
-      if (!(error instanceof DriverError) || error.code !== 'ANALYZER_NOT_ANSWERING') throw error;
-      throw new DriverError(
-        'ANALYZER_NOT_ANSWERING',
-        'the instrument is connected and says nothing: another program may hold its only session, or it is still starting',
-        error.facts,
-        error,
-      );
+    const deadlineMs = this.#clock.monotonicMs() + this.#options.patienceMs;
+    for (let asked = 1; ; asked += 1) {
+      try {
+        const line = await this.#text(message);
+        if (asked === 1) return line;
+        await this.#discardForAWhile();
+        return await this.#text(message);
+      } catch (error) {
+        if (!isDriverError(error, 'ANALYZER_NOT_ANSWERING')) throw error;
+        if (this.#clock.monotonicMs() < deadlineMs) continue;
+        throw new DriverError(
+          'ANALYZER_NOT_ANSWERING',
+          'the instrument is connected and says nothing: another program may hold its only session, or it is still starting',
+          error.facts,
+          error,
+        );
+      }
     }
+  }
+
+  /** An instrument that was late rather than deaf answers every time that it was asked. */
+  async #discardForAWhile(): Promise<void> {
+    this.#wire.attend('deaf');
+    await this.#clock.sleep(quietMs, this.#options.signal);
+    this.#wire.attend('proving');
   }
 
   #readLine(): Promise<string> {

@@ -22,6 +22,14 @@ export interface SessionOptions {
   onTraffic?: ((note: TrafficNote) => void) | undefined;
 }
 
+export interface ReopenOptions {
+  signal?: AbortSignal | undefined;
+  /** Commands that leave first. */
+  urgent?: readonly string[];
+  /** How long a new connection may stay silent; at least one answer is waited for. */
+  patienceMs?: number;
+}
+
 export interface AskOptions {
   signal?: AbortSignal | undefined;
   timeoutMs?: number;
@@ -104,11 +112,12 @@ export class ScpiSession {
   }
 
   /**
-   * Closes, opens anew and proves that answers pair with questions. `urgent` commands leave first.
+   * Closes, opens anew and proves that answers pair with questions.
    * Throws LINK_OPEN_FAILED, LINK_CLOSED, ANALYZER_NOT_ANSWERING, ANALYZER_OUT_OF_STEP,
    * ANALYZER_BAD_ANSWER or the signal's reason; the session is then still not in step.
    */
-  async resynchronize(signal?: AbortSignal, urgent: readonly string[] = []): Promise<SessionOpening> {
+  async resynchronize(options: ReopenOptions = {}): Promise<SessionOpening> {
+    const { signal, urgent = [], patienceMs = 0 } = options;
     if (this.#proving) throw new Error('defect: a session is resynchronized twice at a time');
     this.#proving = true;
     try {
@@ -120,6 +129,7 @@ export class ScpiSession {
       const opening = await proveStep(this.#wire, this.#clock, {
         errorQuery: this.#options.errorQuery,
         answerTimeoutMs: this.#options.answerTimeoutMs,
+        patienceMs,
         urgent,
         signal,
       });

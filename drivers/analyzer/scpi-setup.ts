@@ -4,10 +4,8 @@ import { DriverError } from '../errors.ts';
 import type { PreparedSweep, SweepSetup } from './analyzer.ts';
 import type { ScpiConversation } from './scpi-conversation.ts';
 import type { TemplateName } from './scpi-dialects.ts';
-import { errorOf } from './scpi-status.ts';
+import { errorOf, undefinedHeader } from './scpi-status.ts';
 
-/** −113, undefined header: what an instrument says to a command it does not have. */
-const undefinedHeader = -113;
 /** Read-back is printed with 7 digits at worst; a synthesizer's own steps are finer than this. */
 const frequencyTolerance = 1e-6;
 /** Axes in single precision or short decimals are coarser than the grid they stand for. */
@@ -23,9 +21,16 @@ export interface InstrumentSweep extends PreparedSweep {
   /** Starts that make one acquisition, and passes that each of them runs. */
   starts: number;
   passesPerStart: number;
+  /** How much longer than by these times a start may take before it is given up. */
+  slackMs: number;
 }
 
-type Course = Pick<InstrumentSweep, 'passMs' | 'starts' | 'passesPerStart' | 'acquisitionMs'>;
+type Course = Pick<InstrumentSweep, 'passMs' | 'starts' | 'passesPerStart' | 'slackMs' | 'acquisitionMs'>;
+
+/** Retrace, band switching and settling are often left out of the stated sweep time. */
+const statedSlackMs = 500;
+/** An estimate knows nothing of how the instrument sweeps. */
+const estimatedSlackMs = 15_000;
 
 /**
  * Sends the whole setup and proves it. Throws ANALYZER_COMMAND_REFUSED, ANALYZER_SETTING_DIFFERS (facts:
@@ -119,19 +124,23 @@ async function applyParameters(talk: ScpiConversation, { parameters }: SweepSetu
  */
 async function applyAveraging(talk: ScpiConversation, setup: SweepSetup): Promise<Course> {
   const { averages } = setup;
-  const sweepMs = await askSweepMs(talk, setup);
+  const statedMs = await askSweepMs(talk);
+  const sweepMs = statedMs ?? estimatedSweepMs(setup);
   const acquisitionMs = sweepMs * averages;
-  if (averages === 1) return { passMs: sweepMs, starts: 1, passesPerStart: 1, acquisitionMs };
+  const all = { acquisitionMs, slackMs: statedMs === undefined ? estimatedSlackMs : statedSlackMs };
+  if (averages === 1) return { ...all, passMs: sweepMs, starts: 1, passesPerStart: 1 };
+  // Without proof that it averages by point it is taken to need N starts, which only cost time if it does.
   const byPoint =
     (await tellIfKnown(talk, 'averagingByPoint')) &&
+    talk.has('averagingModeQuery') &&
     (await talk.askWord('averagingModeQuery')).startsWith('POIN');
   await talk.tell(demand(talk, 'averagingCount'), { value: averages });
   await talk.tell(demand(talk, 'averagingState'), { onOff: 'ON' });
   await talk.throwErrors('averaging');
-  if (byPoint) return { passMs: acquisitionMs, starts: 1, passesPerStart: 1, acquisitionMs };
+  if (byPoint) return { ...all, passMs: acquisitionMs, starts: 1, passesPerStart: 1 };
   return talk.dialect.oneStartRuns === 'whole-average'
-    ? { passMs: sweepMs, starts: 1, passesPerStart: averages, acquisitionMs }
-    : { passMs: sweepMs, starts: averages, passesPerStart: 1, acquisitionMs };
+    ? { ...all, passMs: sweepMs, starts: 1, passesPerStart: averages }
+    : { ...all, passMs: sweepMs, starts: averages, passesPerStart: 1 };
 }
 
 /** Throws ANALYZER_SETTING_DIFFERS unless `got` is what was asked. */
@@ -160,7 +169,9 @@ async function confirmModes(talk: ScpiConversation, { averages }: SweepSetup): P
     requireSetting('sweep type', 'LIN', (await talk.askWord('sweepTypeQuery')).slice(0, 3));
   }
   if (talk.has('formatQuery')) {
-    requireSetting('trace format', format, formatOf(await talk.askWord('formatQuery')));
+    const got = formatOf(await talk.askWord('formatQuery'));
+    // Without its bits the word says less; the length of every block then tells.
+    if (got !== 'REAL' || format === 'ascii') requireSetting('trace format', format, got);
   }
   if (format !== 'ascii' && talk.has('byteOrderQuery')) {
     const word = await talk.askWord('byteOrderQuery');
@@ -236,10 +247,15 @@ export function linearGrid(startHz: number, stopHz: number, points: number): Flo
   );
 }
 
-/** One sweep as the instrument states it, or estimated from the filter's settling where it does not. */
-async function askSweepMs(talk: ScpiConversation, setup: SweepSetup): Promise<number> {
-  const stated = talk.has('sweepTimeQuery') ? 1000 * (await talk.askNumber('sweepTimeQuery')) : 0;
-  return stated > 0 ? stated : setup.points * (1 + 2000 / setup.ifBandwidthHz);
+/** One sweep as the instrument states it; undefined where it states none, or one that rounds to nothing. */
+async function askSweepMs(talk: ScpiConversation): Promise<number | undefined> {
+  const statedS = talk.has('sweepTimeQuery') ? await talk.askStated('sweepTimeQuery') : undefined;
+  return statedS !== undefined && statedS > 0 ? 1000 * statedS : undefined;
+}
+
+/** From the filter's settling alone. */
+function estimatedSweepMs({ points, ifBandwidthHz }: SweepSetup): number {
+  return points * (1 + 2000 / ifBandwidthHz);
 }
 
 async function confirmParameters(talk: ScpiConversation, { parameters }: SweepSetup): Promise<void> {

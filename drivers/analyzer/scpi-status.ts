@@ -17,6 +17,8 @@ export const eventBits = {
 export const anyErrorBits =
   eventBits.queryError | eventBits.deviceError | eventBits.executionError | eventBits.commandError;
 
+/** What an instrument says to a command or query that it does not have. */
+export const undefinedHeader = -113;
 export const initIgnored = -213;
 export const dataStale = -230;
 const queueOverflow = -350;

@@ -41,6 +41,12 @@ export function decodeSetting(text: string): number {
   });
 }
 
+/** Like decodeNumber; undefined where the instrument says that there is no value. */
+export function decodeStated(text: string): number | undefined {
+  const value = decodeNumber(text);
+  return Number.isFinite(value) ? value : undefined;
+}
+
 /** A list with commas, white space around them allowed. Throws ANALYZER_BAD_ANSWER. */
 export function decodeNumberList(text: string): Float64Array {
   return Float64Array.from(text.split(','), decodeNumber);
@@ -87,6 +93,20 @@ export function decodeBlock(
     values[i] = bytesEach === 8 ? view.getFloat64(at, little) : view.getFloat32(at, little);
   }
   return values;
+}
+
+/**
+ * Whether `header` can stand in front of the answer to `question`, as instruments with headers switched on
+ * print it: `:SENSE1:FREQUENCY:START` or `FREQ:STAR` for `:SENS1:FREQ:STAR?`. The last node decides.
+ */
+export function isHeaderOf(question: string, header: string): boolean {
+  if (!/^[:*]?[A-Za-z][\w:]*$/.test(header)) return false;
+  const [asked = ''] = question.split('?');
+  return lastNode(header).startsWith(lastNode(asked));
+}
+
+function lastNode(header: string): string {
+  return (header.split(/[:*]/).at(-1) ?? '').replace(/\d+$/, '').toUpperCase();
 }
 
 /** One entry of the instrument's error queue; code 0 means that the queue is empty. */

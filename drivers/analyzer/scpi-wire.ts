@@ -41,7 +41,7 @@ const slowestBytesPerMs = 10;
  * What becomes of bytes that no question is waiting for. `deaf`: thrown away (just opened); `proving`:
  * kept for the next read (lines of before may still come); `strict`: a reason for doubt.
  */
-type Attention = 'deaf' | 'proving' | 'strict';
+export type Attention = 'deaf' | 'proving' | 'strict';
 
 interface Pending {
   exchange: Exchange;
@@ -86,9 +86,9 @@ export class ScpiWire {
     await this.#link.open(signal);
   }
 
-  attend(attention: 'proving' | 'strict'): void {
+  attend(attention: Attention): void {
     this.#attention = attention;
-    if (attention === 'strict') this.#kept = new Uint8Array(0);
+    if (attention !== 'proving') this.#kept = new Uint8Array(0);
   }
 
   close(): Promise<void> {
@@ -122,12 +122,13 @@ export class ScpiWire {
     if (this.#pending) return Promise.reject(new Error('defect: two exchanges at a time on one session'));
     if (exchange.signal?.aborted) return Promise.reject(exchange.signal.reason);
     return new Promise((resolve, reject) => {
-      const { expected, timeoutMs, signal } = exchange;
+      const { message, expected, timeoutMs, signal } = exchange;
       const nowMs = this.#clock.monotonicMs();
       const onAbort = (): void => this.#abort(pending, signal?.reason);
       const pending: Pending = {
         exchange,
-        reader: expected && new ScpiReader(expected),
+        reader:
+          expected && new ScpiReader(message === undefined ? expected : { ...expected, question: message }),
         dueMs: nowMs + timeoutMs,
         latestMs: nowMs + silencesAtMost * timeoutMs + (expected?.maxBytes ?? 0) / slowestBytesPerMs,
         cancelTimer: () => {},

@@ -168,16 +168,41 @@ describe('prepare', () => {
     const { clock, instrument, analyzer } = analyzerBench();
     await clock.run(analyzer.identify());
     instrument.twist = (message) => {
-      if (message !== ':SENS1:SWE:TIME?') return undefined;
-      instrument.error('-113,"Undefined header;SENS1:SWE:TIME?"', 32);
+      if (message !== ':SENS1:BAND?') return undefined;
+      instrument.error('-113,"Undefined header;SENS1:BAND?"', 32);
       return { reply: null };
     };
     const error = await failureOf(clock.run(analyzer.prepare(sampleSetup)));
     expect(error).toMatchObject({ code: 'ANALYZER_COMMAND_REFUSED', facts: { scpiCode: -113 } });
-    expect(error.message).toContain('SENS1:SWE:TIME?');
+    expect(error.message).toContain('SENS1:BAND?');
     expect(error.cause).toMatchObject({ code: 'ANALYZER_NOT_ANSWERING' });
     expect(analyzer.inStep).toBe(true);
     expect(instrument.visits).toBe(2);
+  });
+
+  it('asks no second time for what the instrument does not have and need not have', async () => {
+    const { clock, instrument, analyzer } = analyzerBench();
+    await clock.run(analyzer.identify());
+    const missing = [':SENS1:SWE:TIME?', ':CALC1:X?'];
+    instrument.twist = (message) => {
+      if (!missing.includes(message)) return undefined;
+      instrument.error(`-113,"Undefined header;${message}"`, 32);
+      return { reply: null };
+    };
+    const sweep = await clock.run(analyzer.prepare(sampleSetup));
+    // Five points of 1 ms and two settling times of a 1 kHz filter each: common practice, no source.
+    expect(sweep.acquisitionMs).toBeCloseTo(5 * (1 + 2), 6);
+    for (let count = 0; count < 3; count += 1) await clock.run(analyzer.acquire());
+    await clock.run(analyzer.recover());
+    for (const query of missing) expect(instrument.heard.filter((one) => one === query)).toHaveLength(1);
+    // Without an axis the grid is confirmed by its edges and its number of points.
+    instrument.heard.length = 0;
+    await clock.run(analyzer.acquire());
+    expect(instrument.heard.slice(-3)).toEqual([
+      ':SENS1:SWE:POIN?',
+      ':SENS1:FREQ:STAR?',
+      ':SENS1:FREQ:STOP?',
+    ]);
   });
 
   it('says that a question stayed unanswered when the queue knows no reason', async () => {
