@@ -37,15 +37,15 @@ export interface ReachableBench {
 export interface Wire {
   name: string;
   kind: 'memory' | 'sockets';
-  reach: (description: BenchDescription) => Promise<ReachableBench>;
+  /** `acceleration`: time of the bench for each millisecond of the world; of no meaning in virtual time. */
+  reach: (description: BenchDescription, acceleration?: number) => Promise<ReachableBench>;
 }
 
 /** Half an hour: no single operation of a driver may take longer, whatever goes wrong. */
 const hangingMs = 1_800_000;
 /** On sockets that is far too long to wait for; the driver's own time-outs are a few seconds there. */
 const socketHangingMs = 45_000;
-/** Time of the bench for each millisecond of the world. */
-const acceleration = 60;
+const usualAcceleration = 60;
 
 export const wires: readonly Wire[] = [
   memoryWire('memory', { latencyMs: 1 }),
@@ -77,7 +77,10 @@ function memoryWire(name: string, options: MemoryPortOptions): Wire {
   };
 }
 
-async function reachBySockets(description: BenchDescription): Promise<ReachableBench> {
+async function reachBySockets(
+  description: BenchDescription,
+  acceleration = usualAcceleration,
+): Promise<ReachableBench> {
   const clock = new SystemClock();
   const fast = new AcceleratedClock(clock, acceleration);
   const bench = new SimulatedBench(fast, description);
