@@ -14,16 +14,10 @@ export interface OrderDraft {
   complete(archive: Archive): Promise<RunOrder>;
 }
 
-/** Throws PLAN_OUTSIDE_TRAVEL, PLAN_AXIS_UNKNOWN; REFERENCE_MISSING when the range has no reference antenna. */
+/** Throws PLAN_OUTSIDE_TRAVEL, PLAN_AXIS_UNKNOWN; for a reference run REFERENCE_MISSING, REFERENCE_DOES_NOT_FIT. */
 export function orderRun(range: RangeFile, plan: Plan): OrderDraft {
   const { steps } = expandPlan(plan, range);
-  if (plan.kind === 'reference' && !range.reference) {
-    throw new DaemonError(
-      'REFERENCE_MISSING',
-      `${range.path} names no reference antenna; a plan of kind reference needs antennas.reference with its gain table`,
-      { range: range.name },
-    );
-  }
+  if (plan.kind === 'reference') refuseUselessReference(range, plan);
   const { axes } = range.positioner;
   return {
     async complete(archive) {
@@ -51,4 +45,26 @@ export function orderRun(range: RangeFile, plan: Plan): OrderDraft {
       };
     },
   };
+}
+
+/** A reference run from which no gain could be taken is refused before a night is spent on it. */
+function refuseUselessReference(range: RangeFile, plan: Plan): void {
+  const { reference } = range;
+  if (!reference) {
+    throw new DaemonError(
+      'REFERENCE_MISSING',
+      `${range.path} names no reference antenna; a plan of kind reference needs antennas.reference with its gain table`,
+      { range: range.name },
+    );
+  }
+  const firstHz = reference.table[0]?.frequencyHz ?? Number.NaN;
+  const lastHz = reference.table.at(-1)?.frequencyHz ?? Number.NaN;
+  const { startHz, stopHz } = plan.band;
+  if (firstHz <= startHz && lastHz >= stopHz) return;
+  throw new DaemonError(
+    'REFERENCE_DOES_NOT_FIT',
+    `${range.path}: the gain table of ${reference.name} covers ${firstHz / 1e6} to ${lastHz / 1e6} MHz, ` +
+      `the plan ${startHz / 1e6} to ${stopHz / 1e6} MHz; widen the table or narrow the band`,
+    { tableStartHz: firstHz, tableStopHz: lastHz, startHz, stopHz },
+  );
 }
