@@ -1,8 +1,15 @@
 // One straight move, and the knowledge that it has ended: line, barrier, reports meanwhile; then the fresh
 // read-back. An answer that got lost on the wire is made good by sending the same absolute move again.
 import { DriverError, isDriverError } from '../errors.ts';
-import { type GcodeParts, lineWithinMs, pollMs, readPlaced, resyncAndCheckMemory } from './gcode-parts.ts';
-import type { Placed } from './gcode-reference.ts';
+import {
+  type GcodeParts,
+  lineWithinMs,
+  pollMs,
+  readPlaced,
+  restartedUnseen,
+  resyncAndCheckMemory,
+} from './gcode-parts.ts';
+import { isZero, type Placed } from './gcode-reference.ts';
 import { type Leg, LegWatch } from './leg-watch.ts';
 import type { AxisSetup, Position } from './positioner.ts';
 import { legMotion, motionLine } from './travel.ts';
@@ -36,8 +43,15 @@ export async function driveLeg(
       if (!isDriverError(error, 'POSITIONER_NOT_ANSWERING') || attempt >= attempts) throw error;
       await awaitStandstill(parts, toDeg, from.position, signal);
       await resyncAndCheckMemory(parts, signal);
+      if (!parts.memoryMark) await demandNoFallToZero(parts, from, signal);
     }
   }
+}
+
+/** Where no mark tells of a restart, a move that ended at zero without an answer is not repeated from there. */
+async function demandNoFallToZero(parts: GcodeParts, from: Placed, signal: AbortSignal): Promise<void> {
+  const { machine } = await readPlaced(parts, signal);
+  if (isZero(machine) && !isZero(from.machine)) throw restartedUnseen(parts, 'its position fell to zero');
 }
 
 /** Sends the barrier and watches the reports until it is answered. A lost answer: POSITIONER_NOT_ANSWERING. */
@@ -49,6 +63,9 @@ async function awaitBarrier(parts: GcodeParts, leg: Leg, signal: AbortSignal): P
   const watched = watchReports(parts, watch, both);
   try {
     await Promise.race([answered, watched]);
+    if (!parts.memoryMark && watch.endedTooSoon(parts.clock.monotonicMs())) {
+      throw restartedUnseen(parts, 'a move ended sooner than it can');
+    }
   } finally {
     ended.abort(new DriverError('POSITIONER_NOT_ANSWERING', 'the watch over a move has ended'));
     await Promise.allSettled([answered, watched]);

@@ -96,6 +96,8 @@ export function brakingMs(parts: GcodeParts): number {
 
 /** A plane that no controller starts in and no straight move asks for. */
 const markPlane = 18;
+/** A print-out may be damaged on the wire. */
+const planeQuestions = 3;
 
 /**
  * Modes, and a plane as the memory mark: it stands in the parser state until the controller restarts, since
@@ -103,8 +105,16 @@ const markPlane = 18;
  */
 export async function setModes(parts: GcodeParts, signal?: AbortSignal): Promise<void> {
   await parts.sender.line(`G${markPlane} G21 G90 G94`, { withinMs: lineWithinMs, signal });
-  const lines = await parts.sender.line('$G', { withinMs: lineWithinMs, signal });
-  parts.memoryMark = planeIn(lines) === markPlane;
+  parts.memoryMark = (await askPlane(parts, signal)) === markPlane;
+}
+
+/** The plane in the parser state; undefined where three print-outs do not show it. */
+async function askPlane(parts: GcodeParts, signal?: AbortSignal): Promise<number | undefined> {
+  for (let asked = 0; asked < planeQuestions; asked += 1) {
+    const plane = planeIn(await parts.sender.line('$G', { withinMs: lineWithinMs, signal }));
+    if (plane !== undefined) return plane;
+  }
+  return undefined;
 }
 
 function planeIn(lines: readonly ControllerLine[]): number | undefined {
@@ -118,7 +128,7 @@ function planeIn(lines: readonly ControllerLine[]): number | undefined {
 export async function checkMemory(parts: GcodeParts, signal?: AbortSignal): Promise<void> {
   if (!parts.memoryMark) return;
   try {
-    demandMark(parts, await parts.sender.line('$G', { withinMs: lineWithinMs, signal }));
+    demandMark(parts, await askPlane(parts, signal));
   } catch (error) {
     if (!isDriverError(error, 'POSITIONER_NOT_ANSWERING')) throw error;
     await resyncAndCheckMemory(parts, signal);
@@ -137,20 +147,28 @@ export async function noteMemory(parts: GcodeParts, signal?: AbortSignal): Promi
 /** After a lost answer: agrees with the controller again, and checks its memory. */
 export async function resyncAndCheckMemory(parts: GcodeParts, signal?: AbortSignal): Promise<void> {
   const lines = await parts.sender.resync(signal);
-  if (parts.memoryMark) demandMark(parts, lines);
+  if (parts.memoryMark) demandMark(parts, planeIn(lines) ?? (await askPlane(parts, signal)));
 }
 
-function demandMark(parts: GcodeParts, lines: readonly ControllerLine[]): void {
-  const plane = planeIn(lines);
-  // No plane at all is a damaged line, and proves nothing.
-  if (plane === undefined || plane === markPlane) return;
-  const error = new DriverError(
-    'POSITIONER_RESTARTED',
-    `${parts.link.name} restarted unseen: it has forgotten its modes`,
-    { link: parts.link.name },
-  );
+function demandMark(parts: GcodeParts, plane: number | undefined): void {
+  if (plane === markPlane) return;
+  if (plane === undefined) {
+    throw new DriverError(
+      'POSITIONER_BAD_ANSWER',
+      `${parts.link.name} does not print its modes any more: a restart could not be told`,
+      { asked: planeQuestions },
+    );
+  }
+  throw restartedUnseen(parts, 'it has forgotten its modes');
+}
+
+/** The error of a restart that no banner told of; the reference is lost with it. */
+export function restartedUnseen(parts: GcodeParts, because: string): DriverError {
+  const error = new DriverError('POSITIONER_RESTARTED', `${parts.link.name} restarted unseen: ${because}`, {
+    link: parts.link.name,
+  });
   parts.reference.lose(error, true);
-  throw error;
+  return error;
 }
 
 export function samePlace(axes: readonly AxisSetup[], a: Position, b: Position): boolean {

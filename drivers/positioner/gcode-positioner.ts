@@ -156,21 +156,15 @@ export class GcodePositioner implements Positioner {
 
   async #stop(): Promise<StopReport> {
     this.#stops += 1;
-    const { link, reference } = this.#parts;
-    const wasOpen = link.isOpen;
+    const { reference } = this.#parts;
     const looksMoving = reference.last !== undefined && isMoving(reference.last.report);
     const underway = this.#underway === 'nothing' && looksMoving ? 'move' : this.#underway;
     const stopped = stopAxes(this.#parts, underway);
     this.#arrivedDeg = {};
     this.#fail(new DriverError('POSITIONER_STOPPED', 'stopped on request', { underway }));
-    try {
-      const report = await stopped;
-      this.#atRest();
-      return report;
-    } finally {
-      // Opened only for the stop: whoever wants to go on connects with identify().
-      if (!wasOpen) await link.close();
-    }
+    const report = await stopped;
+    this.#atRest();
+    return report;
   }
 
   /** Runs one operation after those before it; a fault or a stop ends it, and a move it leaves behind is stopped. */
@@ -227,7 +221,7 @@ export class GcodePositioner implements Positioner {
 
   #atRest(): void {
     this.#underway = 'nothing';
-    this.#parts.reference.motionExpected = false;
+    this.#parts.reference.comeToRest();
   }
 
   /** Where each axis stands: where we sent it, as long as it is still there; otherwise where it says to be. */

@@ -35,6 +35,8 @@ export class GcodeReference {
   #valid = false;
   #lostBecause: DriverError | undefined;
   #lastTrusted: Position | undefined;
+  /** The last trusted position was on its way: a restart unseen may have made it what it seemed to be. */
+  #trustedInMotion = false;
   #coordinateDoubtful = false;
   #alarm: number | undefined;
   #limits: Readonly<Record<AxisName, AxisLimits>>;
@@ -119,6 +121,13 @@ export class GcodeReference {
     this.#lostBecause = undefined;
     this.#coordinateDoubtful = false;
     this.#lastTrusted = position;
+    this.#trustedInMotion = false;
+  }
+
+  /** Nothing is on its way any more; a position that is still trusted is that of shafts at rest. */
+  comeToRest(): void {
+    this.motionExpected = false;
+    if (this.#valid) this.#trustedInMotion = false;
   }
 
   /** A connection stands. A restart on the first one took nothing away: nothing had been trusted before. */
@@ -160,12 +169,14 @@ export class GcodeReference {
 
   /**
    * Whether an axis without a switch may be believed at `position`: it never was trusted before (the zero at
-   * connection is the axis's zero), or its counter went on without a break, or it stands where it last stood.
+   * connection is the axis's zero), or its counter went on without a break, or it stands where it last came to
+   * rest. A place seen on the way proves nothing: it may have been seen after the counter was lost.
    */
   isContinuous(axis: AxisSetup, position: Position): boolean {
     const before = this.#lastTrusted?.[axis.name];
     const now = position[axis.name];
     if (before === undefined || !this.#coordinateDoubtful) return true;
+    if (this.#trustedInMotion) return false;
     return now !== undefined && Math.abs(now - before) <= axis.toleranceDeg;
   }
 
@@ -201,7 +212,10 @@ export class GcodeReference {
     }
     this.#jumps = 0;
     this.#last = placed;
-    if (this.#valid) this.#lastTrusted = placed.position;
+    if (this.#valid) {
+      this.#lastTrusted = placed.position;
+      this.#trustedInMotion = this.motionExpected;
+    }
     this.#positions.next({
       monotonicMs,
       position: placed.position,
@@ -216,7 +230,7 @@ export class GcodeReference {
    */
   #fellToZero(previous: Placed, now: Placed): boolean {
     if (this.motionExpected || isMoving(previous.report) || isMoving(now.report)) return false;
-    if (!now.machine.every((units) => Math.abs(units) <= zeroUnits)) return false;
+    if (!isZero(now.machine)) return false;
     return this.#axes.some((axis) => {
       const jumpDeg = Math.abs((now.position[axis.name] ?? 0) - (previous.position[axis.name] ?? 0));
       return jumpDeg > axis.toleranceDeg;
@@ -247,4 +261,9 @@ export class GcodeReference {
     this.lose(error, true);
     this.#faults.next(error);
   }
+}
+
+/** All axes where a restart puts them. */
+export function isZero(machine: readonly number[]): boolean {
+  return machine.every((units) => Math.abs(units) <= zeroUnits);
 }

@@ -114,6 +114,9 @@ export function limitsFrom(
   );
 }
 
+/** A cycle that fails says so itself: only an answer that was lost is waited for in vain. */
+const homingSecondsAtLeast = 150;
+
 /**
  * Seconds after which a homing cycle must have ended: every axis in turn searches one and a half of its travel
  * at the seek rate and comes back slowly; half as much again for what the settings do not tell, and 10 s.
@@ -132,7 +135,7 @@ export function homingSeconds(settings: Settings, axes: readonly AxisSetup[], le
     );
     seconds += (searchUnits / Math.max(rate, 1e-3)) * 60;
   }
-  return seconds * 1.5 + 10;
+  return Math.max(seconds * 1.5 + 10, homingSecondsAtLeast);
 }
 
 /** undefined when the setting was not printed or is no number. */

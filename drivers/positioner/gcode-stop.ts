@@ -31,14 +31,17 @@ export type Underway = 'nothing' | 'move' | 'homing';
 /** See Positioner.stop. Sends its first bytes before it first yields. */
 export async function stopAxes(parts: GcodeParts, underway: Underway): Promise<StopReport> {
   const calledMs = parts.clock.monotonicMs();
-  const wasOpen = parts.link.isOpen;
-  if (wasOpen) sendFirst(parts, underway);
+  if (parts.link.isOpen) sendFirst(parts, underway);
   try {
-    if (!wasOpen) {
-      await parts.link.open();
-      sendFirst(parts, underway);
+    if (parts.link.isOpen) {
+      try {
+        return await comeToRest(parts, underway, calledMs, 0);
+      } catch (error) {
+        // The wire failed meanwhile; another connection may still tell.
+        if (!isDriverError(error, 'LINK_CLOSED')) throw error;
+      }
     }
-    return await comeToRest(parts, wasOpen ? underway : 'move', calledMs, wasOpen ? 0 : reopenGraceMs);
+    return await stopOverNewLink(parts, calledMs);
   } catch (error) {
     throw new DriverError(
       'POSITIONER_STOP_UNCONFIRMED',
@@ -46,6 +49,17 @@ export async function stopAxes(parts: GcodeParts, underway: Underway): Promise<S
       { underway, waitedMs: parts.clock.monotonicMs() - calledMs },
       error,
     );
+  }
+}
+
+/** Opened only for the stop, and closed behind it: whoever wants to go on connects with identify(). */
+async function stopOverNewLink(parts: GcodeParts, calledMs: number): Promise<StopReport> {
+  if (!parts.link.isOpen) await parts.link.open();
+  try {
+    sendFirst(parts, 'move');
+    return await comeToRest(parts, 'move', calledMs, reopenGraceMs);
+  } finally {
+    await parts.link.close();
   }
 }
 
@@ -115,11 +129,13 @@ async function awaitHold(parts: GcodeParts, withinMs: number): Promise<Placed | 
   }
 }
 
-/** `Idle` once proves nothing: it is also said just before a move begins. */
+/** `Idle` once proves nothing: it is also said just before a move begins, but then twice at different places. */
 function showsRest(parts: GcodeParts, placed: Placed, before: Placed | undefined): boolean {
   if (placed.report.state === 'Home' || isMoving(placed.report)) return false;
-  if (placed.report.state !== 'Idle') return true;
-  return before?.report.state === 'Idle' && samePlace(parts.axes, before.position, placed.position);
+  // `Hold` without a number does not tell whether it has come to a halt.
+  const { state, sub } = placed.report;
+  if (state !== 'Idle' && (state !== 'Hold' || sub !== undefined)) return true;
+  return before?.report.state === state && samePlace(parts.axes, before.position, placed.position);
 }
 
 /** Pulses end at once; the motors may run on, so that nothing is known of the position afterwards. */

@@ -12,6 +12,8 @@ const idleMs = 2_000;
 /** The slowest feed override is a tenth of the rate. */
 const slowestOverride = 10;
 const graceMs = 60_000;
+/** The quickest feed override is twice the rate; and half as much again for what the plan does not know. */
+const quickestShare = 1 / 3;
 /** One report may be damaged; two in a row off the path are believed. */
 const strayReports = 2;
 
@@ -48,6 +50,11 @@ export class LegWatch {
   /** No move that makes progress takes longer, not even at the slowest override. */
   get limitMs(): number {
     return this.#leg.plannedMs * slowestOverride * 1.5 + graceMs;
+  }
+
+  /** No move can be over by `nowMs`. */
+  endedTooSoon(nowMs: number): boolean {
+    return nowMs - this.#startedMs < this.#leg.plannedMs * quickestShare - idleMs / 2;
   }
 
   judge(placed: Placed): LegVerdict {
