@@ -2,6 +2,7 @@
 // the things described answer is the bench's business.
 import { dirname, resolve } from 'node:path';
 import { checkText, type Finding } from './check-tree.ts';
+import { isSameDevice } from './link-address.ts';
 import type { RangeAxis, RangeFile, ReferenceAntenna } from './range-file.ts';
 import { type RangeText, rangeSchema } from './range-schema.ts';
 
@@ -60,7 +61,7 @@ function checkRange(written: RangeText): Finding[] {
   if (axes.length === 0) {
     findings.push({ path: ['positioner', 'axes'], expectation: 'at least one axis, such as azimuth' });
   }
-  if (analyzer.link.host === positioner.link.host && analyzer.link.port === positioner.link.port) {
+  if (isSameDevice(analyzer.link, positioner.link)) {
     findings.push({ path: ['positioner', 'link'], expectation: 'another address than analyzer.link' });
   }
   const owners = new Map<string, string>();

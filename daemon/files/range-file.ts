@@ -1,12 +1,10 @@
 // What stands on the site, as checked values with units. Loading and its errors are beside this file.
 import type { AxisSetup } from '../../drivers/positioner/positioner.ts';
 
-/** Where a device is reached; so far TCP alone. */
-export interface LinkAddress {
-  kind: 'tcp';
-  host: string;
-  port: number;
-}
+/** Where a device is reached. */
+export type LinkAddress =
+  | { kind: 'tcp'; host: string; port: number }
+  | { kind: 'serial'; path: string; baud: number };
 
 export interface RangeAxis extends AxisSetup {
   /** Pattern angle = sense × (position − boresightDeg), wrapped to (−180°, 180°]. */

@@ -24,7 +24,7 @@ const link = z
     refuse(context, linkExpectation, parsed.advice);
     return z.NEVER;
   })
-  .meta({ pattern: '^tcp://', description: linkExpectation });
+  .meta({ pattern: '^(tcp|serial)://', description: linkExpectation });
 
 const travelAngle: Limits = { from: -3600, to: 3600, says: 'within ten turns' };
 const height: Limits = { above: 0, to: 1000, says: 'above 0 m and up to 1 km' };

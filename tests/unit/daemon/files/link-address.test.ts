@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { parseLink } from '../../../../daemon/files/link-address.ts';
+import { isSameDevice, parseLink } from '../../../../daemon/files/link-address.ts';
 
 describe('link addresses', () => {
   it.each([
@@ -12,7 +12,37 @@ describe('link addresses', () => {
   });
 
   it.each([
-    ['serial:/dev/ttyUSB0', 'not yet offered'],
+    ['serial:///dev/ttyACM0', '/dev/ttyACM0', 115_200],
+    ['serial:///dev/ttyUSB1?baud=9600', '/dev/ttyUSB1', 9600],
+    ['serial:///dev/serial/by-id/usb-x_y-if00?baud=250000', '/dev/serial/by-id/usb-x_y-if00', 250_000],
+    ['serial://COM7?baud=115200', 'COM7', 115_200],
+  ])('%s', (text, path, baud) => {
+    expect(parseLink(text)).toStrictEqual({ kind: 'link', link: { kind: 'serial', path, baud } });
+  });
+
+  it('tell two links to one device', () => {
+    const linkOf = (text: string) => {
+      const parsed = parseLink(text);
+      if (parsed.kind !== 'link') throw new Error(text);
+      return parsed.link;
+    };
+    const same = (a: string, b: string) => isSameDevice(linkOf(a), linkOf(b));
+    expect(same('serial:///dev/ttyACM0?baud=9600', 'serial:///dev/ttyACM0')).toBe(true);
+    expect(same('serial:///dev/ttyACM0', 'serial:///dev/ttyACM1')).toBe(false);
+    expect(same('tcp://h:1', 'tcp://h:1')).toBe(true);
+    expect(same('tcp://h:1', 'tcp://h:2')).toBe(false);
+    expect(same('tcp://h:1', 'serial:///dev/ttyACM0')).toBe(false);
+  });
+
+  it.each([
+    ['serial:/dev/ttyUSB0', 'serial:// and the device file'],
+    ['serial://dev/ttyUSB0', 'full path'],
+    ['serial:///dev/tty USB0', 'full path'],
+    ['serial://', 'full path'],
+    ['serial:///dev/ttyACM0?baud=fast', 'from 300 to 4000000'],
+    ['serial:///dev/ttyACM0?baud=', 'from 300 to 4000000'],
+    ['serial:///dev/ttyACM0?baud=110', 'from 300 to 4000000'],
+    ['serial:///dev/ttyACM0?parity=even', 'serial:// and the device file'],
     ['tcp://127.0.0.1', 'port is missing'],
     ['tcp://[::1]', 'port is missing'],
     ['tcp://h:0', 'from 1 to 65535'],

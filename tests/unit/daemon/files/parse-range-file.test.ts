@@ -143,7 +143,7 @@ const wrong: [number, string | undefined, number, string][] = [
     7,
     '  link: serial:/dev/ttyUSB0',
     7,
-    'analyzer.link: expected a link such as tcp://192.168.1.20:5025; found "serial:/dev/ttyUSB0" (serial lines are not yet offered',
+    'analyzer.link: expected a link such as tcp://192.168.1.20:5025 or serial:///dev/ttyACM0?baud=115200; found "serial:/dev/ttyUSB0" (a serial link is serial://',
   ],
   [7, '  link: tcp://127.0.0.1:99999', 7, 'analyzer.link: expected a link such as'],
   [
@@ -165,7 +165,12 @@ const wrong: [number, string | undefined, number, string][] = [
   ],
   [12, '    byteorder: swapped', 12, 'analyzer.trace: unknown key `byteorder`; did you mean `byteOrder`?'],
   [12, '    colour: red', 12, 'analyzer.trace: unknown key `colour`; known here: format, byteOrder'],
-  [14, undefined, 13, 'positioner.link: expected a link such as tcp://192.168.1.20:5025; found nothing'],
+  [
+    14,
+    undefined,
+    13,
+    'positioner.link: expected a link such as tcp://192.168.1.20:5025 or serial:///dev/ttyACM0?baud=115200; found nothing',
+  ],
   [
     15,
     '  family: position-report',
