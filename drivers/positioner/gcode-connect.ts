@@ -2,9 +2,10 @@
 // probes, refuses what moves or waits, reads identity and settings. Resets nothing that might be moving and
 // unlocks nothing: that is for stop() and home().
 import { DriverError, isDriverError } from '../errors.ts';
-import { type GcodeParts, lineWithinMs, noteMemory, pollMs, readPlaced, setModes } from './gcode-parts.ts';
+import { urgentBytes } from './gcode-events.ts';
+import { noteMemory, setModes } from './gcode-memory.ts';
+import { askTwice, type GcodeParts, lineWithinMs, pollMs, readPlaced } from './gcode-parts.ts';
 import type { ControllerLine, StatusReport } from './gcode-reports.ts';
-import { urgentBytes } from './gcode-sender.ts';
 import { checkSettings, limitsFrom, missingSettings, settingsIn } from './gcode-settings.ts';
 import type { ControllerIdentity } from './positioner.ts';
 
@@ -110,8 +111,7 @@ function placeText(report: StatusReport): string {
 }
 
 async function interrogate(parts: GcodeParts, signal?: AbortSignal): Promise<ControllerIdentity> {
-  const options = { withinMs: lineWithinMs, signal };
-  const identity = await parts.sender.line('$I', options);
+  const identity = await askTwice(parts, '$I', signal);
   const version = dataIn(identity, 'VER');
   if (version === undefined) {
     throw new DriverError('POSITIONER_UNEXPECTED_CONTROLLER', `${parts.link.name} tells no version`, {
@@ -138,7 +138,7 @@ async function readSettings(parts: GcodeParts, letters: string, signal?: AbortSi
   const settings = new Map<number, string>();
   // Twice: a line of the long print-out may be damaged on the wire.
   for (let round = 0; round < 2; round += 1) {
-    const lines = await parts.sender.line('$$', { withinMs: lineWithinMs * 2, signal });
+    const lines = await askTwice(parts, '$$', signal, lineWithinMs * 2);
     for (const [number, value] of settingsIn(lines)) settings.set(number, value);
     if (missingSettings(settings, parts.axes, letters).length === 0) break;
   }

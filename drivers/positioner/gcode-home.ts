@@ -2,9 +2,10 @@
 // have none. An axis without a switch is believed at the controller's zero, but not after a restart moved that
 // zero under it: then somebody has to set it by hand.
 import { DriverError } from '../errors.ts';
+import { alarmError } from './gcode-failures.ts';
 import { alarmMeaning } from './gcode-meanings.ts';
-import { awaitRest, type GcodeParts, lineWithinMs, pollMs, readPlaced, setModes } from './gcode-parts.ts';
-import { alarmError } from './gcode-sender.ts';
+import { fallToZero, noteMemory, setModes } from './gcode-memory.ts';
+import { askTwice, awaitRest, type GcodeParts, pollMs, readPlaced } from './gcode-parts.ts';
 import { homingSeconds } from './gcode-settings.ts';
 import type { Position } from './positioner.ts';
 
@@ -21,24 +22,26 @@ export interface HomeOptions {
 export async function homeAxes(parts: GcodeParts, options: HomeOptions, signal: AbortSignal): Promise<void> {
   await leaveMuteAlarm(parts, signal);
   const before = await readPlaced(parts, signal);
+  fallToZero(parts, before);
   const locked = before.report.state === 'Alarm';
   if (!locked) await awaitRest(parts, signal);
   if (parts.axes.some((axis) => axis.homing === 'switch')) {
-    options.onMotion();
     const withinMs = homingSeconds(parts.settings, parts.axes, parts.reference.letters) * 1000;
-    await parts.sender.line('$H', { withinMs, signal });
+    await parts.sender.line('$H', { withinMs, signal, onSend: options.onMotion });
     await parts.clock.sleep(afterHomingMs, signal);
   } else if (locked) {
-    await parts.sender.line('$X', { withinMs: lineWithinMs, signal });
+    await askTwice(parts, '$X', signal);
   }
   const after = await readPlaced(parts, signal);
   if (after.report.state === 'Alarm') throw alarmError(parts.reference.alarm, parts.link.name);
   await awaitRest(parts, signal);
   parts.reference.clearAlarm();
+  // Setting the mark anew must not cover up that it was lost.
+  await noteMemory(parts, signal);
   await setModes(parts, signal);
-  const { position } = await readPlaced(parts, signal);
-  if (!options.believeZeroAfterRestart) demandContinuity(parts, position);
-  parts.reference.trust(position);
+  const placed = await readPlaced(parts, signal);
+  if (!options.believeZeroAfterRestart) demandContinuity(parts, placed.position);
+  parts.reference.trust(placed);
 }
 
 /** After some alarms nothing is answered until a soft reset. Nothing moves then. */

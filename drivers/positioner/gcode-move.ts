@@ -1,14 +1,8 @@
 // One straight move, and the knowledge that it has ended: line, barrier, reports meanwhile; then the fresh
 // read-back. An answer that got lost on the wire is made good by sending the same absolute move again.
 import { DriverError, isDriverError } from '../errors.ts';
-import {
-  type GcodeParts,
-  lineWithinMs,
-  pollMs,
-  readPlaced,
-  restartedUnseen,
-  resyncAndCheckMemory,
-} from './gcode-parts.ts';
+import { restartedUnseen, resyncAndCheckMemory } from './gcode-memory.ts';
+import { type GcodeParts, lineWithinMs, pollMs, readPlaced } from './gcode-parts.ts';
 import { isZero, type Placed } from './gcode-reference.ts';
 import { type Leg, LegWatch } from './leg-watch.ts';
 import type { AxisSetup, Position } from './positioner.ts';
@@ -21,21 +15,24 @@ const silenceMs = 3_000;
 const readBackTries = 3;
 const attempts = 2;
 
-/** Drives one leg to its end. `onMotion` is called right before the line that moves leaves. */
+/**
+ * Drives one leg to its end. `atDeg`: where the axes are known to stand; from elsewhere nothing is sent
+ * (POSITIONER_WRONG_PLACE). `onMotion` is called right before the line that moves leaves.
+ */
 export async function driveLeg(
   parts: GcodeParts,
+  atDeg: Position,
   toDeg: Position,
   onMotion: () => void,
   signal: AbortSignal,
 ): Promise<void> {
   for (let attempt = 1; ; attempt += 1) {
-    const from = await readPlaced(parts, signal);
+    const from = attempt === 1 ? await readBack(parts, atDeg, signal) : await readPlaced(parts, signal);
     const motion = legMotion(parts.axes, parts.reference.limits, from.position, toDeg);
     const line = motionLine(parts.axes, toDeg, motion.feedUnitsPerMin);
     try {
       signal.throwIfAborted();
-      onMotion();
-      await parts.sender.line(line, { withinMs: lineWithinMs, signal });
+      await parts.sender.line(line, { withinMs: lineWithinMs, signal, onSend: onMotion });
       const leg = { fromDeg: from.position, toDeg, plannedMs: motion.seconds * 1000 };
       await awaitBarrier(parts, leg, signal);
       return;
@@ -43,15 +40,15 @@ export async function driveLeg(
       if (!isDriverError(error, 'POSITIONER_NOT_ANSWERING') || attempt >= attempts) throw error;
       await awaitStandstill(parts, toDeg, from.position, signal);
       await resyncAndCheckMemory(parts, signal);
-      if (!parts.memoryMark) await demandNoFallToZero(parts, from, signal);
+      if (parts.memoryMark !== 'set') await demandNoFallToZero(parts, signal);
     }
   }
 }
 
 /** Where no mark tells of a restart, a move that ended at zero without an answer is not repeated from there. */
-async function demandNoFallToZero(parts: GcodeParts, from: Placed, signal: AbortSignal): Promise<void> {
+async function demandNoFallToZero(parts: GcodeParts, signal: AbortSignal): Promise<void> {
   const { machine } = await readPlaced(parts, signal);
-  if (isZero(machine) && !isZero(from.machine)) throw restartedUnseen(parts, 'its position fell to zero');
+  if (isZero(machine)) throw restartedUnseen(parts, 'it is at zero and owes an answer');
 }
 
 /** Sends the barrier and watches the reports until it is answered. A lost answer: POSITIONER_NOT_ANSWERING. */
@@ -63,7 +60,7 @@ async function awaitBarrier(parts: GcodeParts, leg: Leg, signal: AbortSignal): P
   const watched = watchReports(parts, watch, both);
   try {
     await Promise.race([answered, watched]);
-    if (!parts.memoryMark && watch.endedTooSoon(parts.clock.monotonicMs())) {
+    if (parts.memoryMark !== 'set' && watch.endedTooSoon(parts.clock.monotonicMs())) {
       throw restartedUnseen(parts, 'a move ended sooner than it can');
     }
   } finally {
@@ -138,17 +135,17 @@ export async function readBack(parts: GcodeParts, target: Position, signal: Abor
 }
 
 /**
- * A wrong place may come from an unseen restart, and the stop that follows wipes the proof: at rest the
- * controller's memory is asked for (throws POSITIONER_RESTARTED); in motion there is no time to, and the
- * coordinates count as lost.
+ * What a failed move may have hidden. A wrong place may come from an unseen restart, and the stop that follows
+ * wipes the proof: at rest the controller's memory is asked for (throws POSITIONER_RESTARTED); in motion there is
+ * no time to, and the coordinates count as lost. So they do in an alarm that nobody heard of.
  */
-export async function lookIntoWrongPlace(
-  parts: GcodeParts,
-  error: unknown,
-  signal: AbortSignal,
-): Promise<void> {
+export async function lookIntoFailure(parts: GcodeParts, error: unknown, signal: AbortSignal): Promise<void> {
+  if (isDriverError(error, 'POSITIONER_ALARM') && parts.reference.alarm === undefined) {
+    parts.reference.lose(error, true);
+  }
   if (!isDriverError(error, 'POSITIONER_WRONG_PLACE')) return;
-  if (error.facts['state'] === 'Idle' && parts.memoryMark) await resyncAndCheckMemory(parts, signal);
+  if (error.facts['state'] === 'Idle' && parts.memoryMark === 'set')
+    await resyncAndCheckMemory(parts, signal);
   else parts.reference.lose(error, true);
 }
 

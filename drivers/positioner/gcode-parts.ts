@@ -1,11 +1,13 @@
 // What the procedures of the positioner (connect, home, move, stop) work with, and the small steps they share:
-// a report with a position, waiting for rest, the memory mark that betrays an unseen restart.
+// a report with a position, waiting for rest.
 import type { Clock } from '../clock.ts';
 import { DriverError, isDriverError } from '../errors.ts';
 import type { Link } from '../link/link.ts';
+import { alarmError } from './gcode-failures.ts';
+import type { MemoryMark } from './gcode-memory.ts';
 import type { GcodeReference, Placed } from './gcode-reference.ts';
-import { type ControllerLine, isHeld, isMoving, planeInParserState } from './gcode-reports.ts';
-import { alarmError, type GcodeSender } from './gcode-sender.ts';
+import { type ControllerLine, isHeld, isMoving } from './gcode-reports.ts';
+import type { GcodeSender } from './gcode-sender.ts';
 import type { Settings } from './gcode-settings.ts';
 import type { AxisSetup, Position } from './positioner.ts';
 import { motionSeconds } from './travel.ts';
@@ -18,13 +20,31 @@ export interface GcodeParts {
   reference: GcodeReference;
   /** As read at connection; empty before. */
   settings: Settings;
-  /** The controller remembers the plane we set and prints it, so that a lost memory can be noticed. */
-  memoryMark: boolean;
+  /** See gcode-memory.ts. */
+  memoryMark: MemoryMark;
 }
 
 export const lineWithinMs = 2_000;
 export const pollMs = 200;
 const offsetReports = 40;
+
+/**
+ * A line that may be said twice without harm, and is where its answer does not come: a busy controller answers
+ * late, a wire loses some. Throws what GcodeSender.line throws.
+ */
+export async function askTwice(
+  parts: GcodeParts,
+  text: string,
+  signal: AbortSignal | undefined,
+  withinMs = lineWithinMs,
+): Promise<ControllerLine[]> {
+  try {
+    return await parts.sender.line(text, { withinMs, signal });
+  } catch (error) {
+    if (!isDriverError(error, 'POSITIONER_NOT_ANSWERING')) throw error;
+    return parts.sender.line(text, { withinMs, signal });
+  }
+}
 
 /** A fresh report with a position in degrees. The offset of work positions comes with every tenth report or so. */
 export async function readPlaced(parts: GcodeParts, signal?: AbortSignal): Promise<Placed> {
@@ -59,7 +79,7 @@ export async function awaitRest(parts: GcodeParts, signal?: AbortSignal): Promis
   for (;;) {
     const placed = await readPlaced(parts, signal);
     const { report } = placed;
-    if (report.state === 'Alarm') throw alarmError(parts.reference.alarm, parts.link.name);
+    if (report.state === 'Alarm') throw alarmMet(parts);
     const late = parts.clock.monotonicMs() > deadlineMs;
     if (isHeld(report) || late || (!isMoving(report) && report.state !== 'Idle')) {
       throw new DriverError(
@@ -71,6 +91,13 @@ export async function awaitRest(parts: GcodeParts, signal?: AbortSignal): Promis
     if (report.state === 'Idle' && !parts.reference.suspectsRestart) return placed;
     await parts.clock.sleep(pollMs, signal);
   }
+}
+
+/** What to throw for a report in alarm; one that was not told may come of anything, a restart included. */
+export function alarmMet(parts: GcodeParts): DriverError {
+  const error = alarmError(parts.reference.alarm, parts.link.name);
+  if (parts.reference.alarm === undefined) parts.reference.lose(error, true);
+  return error;
 }
 
 function longestMotionMs(parts: GcodeParts): number {
@@ -92,83 +119,6 @@ export function brakingMs(parts: GcodeParts): number {
     return limit.rateDegPerS / limit.accelerationDegPerS2;
   });
   return Math.max(0, ...seconds) * 1000;
-}
-
-/** A plane that no controller starts in and no straight move asks for. */
-const markPlane = 18;
-/** A print-out may be damaged on the wire. */
-const planeQuestions = 3;
-
-/**
- * Modes, and a plane as the memory mark: it stands in the parser state until the controller restarts, since
- * motion lines, which carry their own modes, never name one. To be sent after every restart or reset.
- */
-export async function setModes(parts: GcodeParts, signal?: AbortSignal): Promise<void> {
-  await parts.sender.line(`G${markPlane} G21 G90 G94`, { withinMs: lineWithinMs, signal });
-  parts.memoryMark = (await askPlane(parts, signal)) === markPlane;
-}
-
-/** The plane in the parser state; undefined where three print-outs do not show it. */
-async function askPlane(parts: GcodeParts, signal?: AbortSignal): Promise<number | undefined> {
-  for (let asked = 0; asked < planeQuestions; asked += 1) {
-    const plane = planeIn(await parts.sender.line('$G', { withinMs: lineWithinMs, signal }));
-    if (plane !== undefined) return plane;
-  }
-  return undefined;
-}
-
-function planeIn(lines: readonly ControllerLine[]): number | undefined {
-  for (const line of lines) {
-    if (line.kind === 'data' && line.key === 'GC') return planeInParserState(line.value);
-  }
-  return undefined;
-}
-
-/** Throws POSITIONER_RESTARTED if the controller's memory is gone: its banner, and what it did to the position, may go unseen. */
-export async function checkMemory(parts: GcodeParts, signal?: AbortSignal): Promise<void> {
-  if (!parts.memoryMark) return;
-  try {
-    demandMark(parts, await askPlane(parts, signal));
-  } catch (error) {
-    if (!isDriverError(error, 'POSITIONER_NOT_ANSWERING')) throw error;
-    await resyncAndCheckMemory(parts, signal);
-  }
-}
-
-/** As `checkMemory`, where a restart is no failure: the reference remembers it for the next move. */
-export async function noteMemory(parts: GcodeParts, signal?: AbortSignal): Promise<void> {
-  try {
-    await checkMemory(parts, signal);
-  } catch (error) {
-    if (!isDriverError(error, 'POSITIONER_RESTARTED')) throw error;
-  }
-}
-
-/** After a lost answer: agrees with the controller again, and checks its memory. */
-export async function resyncAndCheckMemory(parts: GcodeParts, signal?: AbortSignal): Promise<void> {
-  const lines = await parts.sender.resync(signal);
-  if (parts.memoryMark) demandMark(parts, planeIn(lines) ?? (await askPlane(parts, signal)));
-}
-
-function demandMark(parts: GcodeParts, plane: number | undefined): void {
-  if (plane === markPlane) return;
-  if (plane === undefined) {
-    throw new DriverError(
-      'POSITIONER_BAD_ANSWER',
-      `${parts.link.name} does not print its modes any more: a restart could not be told`,
-      { asked: planeQuestions },
-    );
-  }
-  throw restartedUnseen(parts, 'it has forgotten its modes');
-}
-
-/** The error of a restart that no banner told of; the reference is lost with it. */
-export function restartedUnseen(parts: GcodeParts, because: string): DriverError {
-  const error = new DriverError('POSITIONER_RESTARTED', `${parts.link.name} restarted unseen: ${because}`, {
-    link: parts.link.name,
-  });
-  parts.reference.lose(error, true);
-  return error;
 }
 
 export function samePlace(axes: readonly AxisSetup[], a: Position, b: Position): boolean {

@@ -7,8 +7,9 @@ import { DriverError, isDriverError } from '../errors.ts';
 import type { Link } from '../link/link.ts';
 import { connect } from './gcode-connect.ts';
 import { homeAxes } from './gcode-home.ts';
-import { driveLeg, lookIntoWrongPlace, readBack } from './gcode-move.ts';
-import { awaitRest, checkMemory, type GcodeParts, readPlaced } from './gcode-parts.ts';
+import { checkMemory, forgetMark, proveMemory } from './gcode-memory.ts';
+import { driveLeg, lookIntoFailure, readBack } from './gcode-move.ts';
+import { awaitRest, type GcodeParts, readPlaced } from './gcode-parts.ts';
 import { GcodeReference, type Placed } from './gcode-reference.ts';
 import { isMoving } from './gcode-reports.ts';
 import { GcodeSender, type OnTraffic } from './gcode-sender.ts';
@@ -60,9 +61,13 @@ export class GcodePositioner implements Positioner {
       sender,
       reference,
       settings: new Map(),
-      memoryMark: false,
+      memoryMark: 'missing',
     };
-    sender.events$.subscribe((event) => reference.take(event));
+    sender.events$.subscribe((event) => {
+      reference.take(event);
+      // A reset of our own takes the mark along and is no reason to suspect another.
+      if (event.kind === 'restart' && event.asked) forgetMark(this.#parts);
+    });
     reference.faults$.subscribe((error) => {
       if (!this.#operation?.ridesOutRestarts) this.#fail(error);
     });
@@ -107,16 +112,16 @@ export class GcodePositioner implements Positioner {
     checkTarget(this.axes, target);
     return this.#exclusive(options.signal, async (signal) => {
       this.#parts.reference.check();
-      const { position } = await awaitRest(this.#parts, signal);
-      await checkMemory(this.#parts, signal);
-      const legs = planLegs(this.axes, this.#stands(position), target, options.throughApproach);
+      const placed = await awaitRest(this.#parts, signal);
+      await proveMemory(this.#parts, placed, signal);
+      const legs = planLegs(this.axes, this.#stands(placed.position), target, options.throughApproach);
       const arrivedDeg = this.#arrivedDeg;
       this.#arrivedDeg = {};
-      const placed = await this.#drive(legs, target, signal);
+      const { position } = await this.#drive(placed.position, legs, target, signal);
       this.#atRest();
       await this.#parts.clock.sleep(this.#settleMs(target), signal);
       this.#arrivedDeg = { ...arrivedDeg, ...target };
-      return { position: placed.position, settledMonotonicMs: this.#parts.clock.monotonicMs() };
+      return { position, settledMonotonicMs: this.#parts.clock.monotonicMs() };
     });
   }
 
@@ -142,14 +147,24 @@ export class GcodePositioner implements Positioner {
     await this.#parts.link.close();
   }
 
-  async #drive(legs: readonly Position[], target: Position, signal: AbortSignal): Promise<Placed> {
+  async #drive(
+    fromDeg: Position,
+    legs: readonly Position[],
+    target: Position,
+    signal: AbortSignal,
+  ): Promise<Placed> {
     try {
-      for (const leg of legs) await driveLeg(this.#parts, leg, () => this.#moves('move'), signal);
+      let atDeg = fromDeg;
+      for (const leg of legs) {
+        await driveLeg(this.#parts, atDeg, leg, () => this.#moves('move'), signal);
+        atDeg = { ...atDeg, ...leg };
+      }
       const placed = await readBack(this.#parts, target, signal);
       await checkMemory(this.#parts, signal);
+      this.#parts.reference.confirm(placed);
       return placed;
     } catch (error) {
-      await lookIntoWrongPlace(this.#parts, error, signal);
+      await lookIntoFailure(this.#parts, error, signal);
       throw error;
     }
   }
@@ -221,7 +236,7 @@ export class GcodePositioner implements Positioner {
 
   #atRest(): void {
     this.#underway = 'nothing';
-    this.#parts.reference.comeToRest();
+    this.#parts.reference.motionExpected = false;
   }
 
   /** Where each axis stands: where we sent it, as long as it is still there; otherwise where it says to be. */

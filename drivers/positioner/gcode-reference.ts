@@ -4,9 +4,10 @@
 import { type Observable, Subject } from 'rxjs';
 import type { Clock } from '../clock.ts';
 import { DriverError } from '../errors.ts';
+import type { SenderEvent } from './gcode-events.ts';
+import { alarmError } from './gcode-failures.ts';
 import { alarmMeaning } from './gcode-meanings.ts';
 import { isMoving, machinePosition, type StatusReport } from './gcode-reports.ts';
-import { alarmError, type SenderEvent } from './gcode-sender.ts';
 import type { AxisName, AxisSetup, Position, PositionReport } from './positioner.ts';
 import { type AxisLimits, degreesOf } from './travel.ts';
 
@@ -34,9 +35,9 @@ export class GcodeReference {
   #jumps = 0;
   #valid = false;
   #lostBecause: DriverError | undefined;
-  #lastTrusted: Position | undefined;
-  /** The last trusted position was on its way: a restart unseen may have made it what it seemed to be. */
-  #trustedInMotion = false;
+  #lastTrusted: Placed | undefined;
+  /** The coordinates became doubtful with a motion of ours on its way: where it has led to nobody knows. */
+  #lostInMotion = false;
   #coordinateDoubtful = false;
   #alarm: number | undefined;
   #limits: Readonly<Record<AxisName, AxisLimits>>;
@@ -113,21 +114,28 @@ export class GcodeReference {
     if (this.#valid) this.#lostBecause = because;
     this.#lostBecause ??= because;
     this.#valid = false;
-    if (coordinateDoubtful) this.#coordinateDoubtful = true;
+    if (!coordinateDoubtful) return;
+    this.#coordinateDoubtful = true;
+    if (this.motionExpected) this.#lostInMotion = true;
   }
 
-  trust(position: Position): void {
+  /** The axes were homed, or are believed, at `placed`. */
+  trust(placed: Placed): void {
     this.#valid = true;
     this.#lostBecause = undefined;
     this.#coordinateDoubtful = false;
-    this.#lastTrusted = position;
-    this.#trustedInMotion = false;
+    this.#lastTrusted = placed;
+    this.#lostInMotion = false;
   }
 
-  /** Nothing is on its way any more; a position that is still trusted is that of shafts at rest. */
-  comeToRest(): void {
-    this.motionExpected = false;
-    if (this.#valid) this.#trustedInMotion = false;
+  /** A place that a report alone would not prove: a move has ended there, and no restart was in between. */
+  confirm(placed: Placed): void {
+    if (this.#valid) this.#lastTrusted = placed;
+  }
+
+  /** All axes are at zero, where one of them was trusted to be elsewhere. */
+  hasFallenToZero(now: Placed): boolean {
+    return isZero(now.machine) && this.#lastTrusted !== undefined && !isZero(this.#lastTrusted.machine);
   }
 
   /** A connection stands. A restart on the first one took nothing away: nothing had been trusted before. */
@@ -135,6 +143,7 @@ export class GcodeReference {
     if (this.#lastTrusted) return;
     this.#lostBecause = undefined;
     this.#coordinateDoubtful = false;
+    this.#lostInMotion = false;
   }
 
   /** The controller has been unlocked or homed. */
@@ -169,14 +178,14 @@ export class GcodeReference {
 
   /**
    * Whether an axis without a switch may be believed at `position`: it never was trusted before (the zero at
-   * connection is the axis's zero), or its counter went on without a break, or it stands where it last came to
-   * rest. A place seen on the way proves nothing: it may have been seen after the counter was lost.
+   * connection is the axis's zero), or its counter went on without a break, or it stood still and stands where it
+   * last stood. A place seen during a motion proves nothing: it may have been seen after the counter was lost.
    */
   isContinuous(axis: AxisSetup, position: Position): boolean {
-    const before = this.#lastTrusted?.[axis.name];
+    const before = this.#lastTrusted?.position[axis.name];
     const now = position[axis.name];
     if (before === undefined || !this.#coordinateDoubtful) return true;
-    if (this.#trustedInMotion) return false;
+    if (this.#lostInMotion) return false;
     return now !== undefined && Math.abs(now - before) <= axis.toleranceDeg;
   }
 
@@ -212,10 +221,7 @@ export class GcodeReference {
     }
     this.#jumps = 0;
     this.#last = placed;
-    if (this.#valid) {
-      this.#lastTrusted = placed.position;
-      this.#trustedInMotion = this.motionExpected;
-    }
+    if (this.#valid && !this.hasFallenToZero(placed)) this.#lastTrusted = placed;
     this.#positions.next({
       monotonicMs,
       position: placed.position,

@@ -6,26 +6,10 @@ import type { Clock } from '../clock.ts';
 import { DriverError } from '../errors.ts';
 import { LineSplitter } from '../link/lines.ts';
 import type { Link, LinkClosed } from '../link/link.ts';
-import { alarmMeaning, refusalMeaning } from './gcode-meanings.ts';
+import { AgreementWatch, isParserState } from './gcode-agreement.ts';
+import { nextEvent, type SenderEvent, urgentBytes } from './gcode-events.ts';
+import { alarmError, linkClosedError, notAnsweringError, refusedError } from './gcode-failures.ts';
 import { type ControllerLine, readLine, type StatusReport } from './gcode-reports.ts';
-
-/** Bytes that the controller takes out of the stream at once, without an acknowledgement. */
-export const urgentBytes = {
-  report: 0x3f,
-  hold: 0x21,
-  softReset: 0x18,
-  feedOverride100: 0x90,
-  rapidOverride100: 0x95,
-} as const;
-
-export type SenderEvent =
-  | { kind: 'report'; report: StatusReport; monotonicMs: number }
-  | { kind: 'alarm'; number: number }
-  /** `asked`: the banner answers our own reset. */
-  | { kind: 'restart'; banner: string; asked: boolean }
-  | { kind: 'closed'; news: LinkClosed }
-  /** Any other line that no exchange was waiting for, late answers included. */
-  | { kind: 'stray'; line: ControllerLine };
 
 /** Called for every line and urgent byte, for a log of the wire. */
 export type OnTraffic = (direction: 'sent' | 'received', text: string, monotonicMs: number) => void;
@@ -33,6 +17,8 @@ export type OnTraffic = (direction: 'sent' | 'received', text: string, monotonic
 export interface LineOptions {
   withinMs: number;
   signal?: AbortSignal | undefined;
+  /** Called right before the bytes leave, when both sides are in step. */
+  onSend?: () => void;
 }
 
 interface Exchange {
@@ -48,6 +34,8 @@ interface Exchange {
 const resyncRounds = 3;
 const resyncWithinMs = 1_500;
 const resyncPauseMs = 250;
+/** For a parser state that has been seen before, and may only be late. */
+const statePauseMs = 1_000;
 const reportTries = 3;
 const reportWithinMs = 1_000;
 
@@ -61,6 +49,8 @@ export class GcodeSender {
   #queue: Promise<unknown> = Promise.resolve();
   #outOfStep = true;
   #resetAsked = false;
+  /** It was seen to print its parser state. */
+  #printsState = false;
 
   constructor(link: Link, clock: Clock, onTraffic?: OnTraffic) {
     this.#link = link;
@@ -132,7 +122,7 @@ export class GcodeSender {
       if (answer) return answer;
       this.#checkOpen();
     }
-    throw this.#notAnswering('?', reportTries * reportWithinMs);
+    throw notAnsweringError('?', reportTries * reportWithinMs, this.#link.name);
   }
 
   /** Soft reset; resolves with the banner. Throws POSITIONER_NOT_ANSWERING when none comes in time. */
@@ -142,64 +132,42 @@ export class GcodeSender {
       const banner = this.next((event) => (event.kind === 'restart' ? event : undefined), withinMs, signal);
       this.urgent(urgentBytes.softReset);
       const seen = await banner;
-      if (!seen) throw this.#notAnswering('soft reset', withinMs);
+      if (!seen) throw notAnsweringError('soft reset', withinMs, this.#link.name);
       return seen.banner;
     } finally {
       this.#resetAsked = false;
     }
   }
 
-  /** The first event that `pick` makes something of; undefined when there was none in time. */
+  /** See nextEvent; LINK_CLOSED when the link closes meanwhile. */
   next<T>(
     pick: (event: SenderEvent) => T | undefined,
     withinMs: number,
     signal?: AbortSignal,
   ): Promise<T | undefined> {
-    return new Promise((resolve, reject) => {
-      if (signal?.aborted) return reject(signal.reason);
-      const finish = (act: () => void): void => {
-        cancel();
-        subscription.unsubscribe();
-        signal?.removeEventListener('abort', onAbort);
-        act();
-      };
-      const onAbort = (): void => finish(() => reject(signal?.reason));
-      const cancel = this.#clock.at(this.#clock.monotonicMs() + withinMs, () =>
-        finish(() => resolve(undefined)),
-      );
-      const subscription = this.#events.subscribe((event) => {
-        const picked = pick(event);
-        if (picked !== undefined) finish(() => resolve(picked));
-        else if (event.kind === 'closed') finish(() => reject(this.#linkClosed(event.news)));
-      });
-      signal?.addEventListener('abort', onAbort, { once: true });
+    return nextEvent(this.#events, this.#clock, {
+      pick: (event) => pick(event) ?? this.#throwIfClosed(event),
+      withinMs,
+      signal,
     });
   }
 
-  /**
-   * A `#` spoils half a line that may be left in the controller, so that it is refused instead of run in part.
-   * Then the parser state is asked for: the first answer behind its text is its own, whatever was owed before.
-   * A controller that does not print it is in step after both answers and a pause.
-   */
+  /** See AgreementWatch for what is said and how its answers are told from older ones. */
   async #resync(signal: AbortSignal | undefined): Promise<ControllerLine[]> {
     for (let round = 0; ; round += 1) {
-      let stateSeen = false;
-      let answers = 0;
+      const watch = new AgreementWatch(round);
       let cancelQuiet = (): void => {};
       const done = (line: ControllerLine): boolean => {
         cancelQuiet();
-        if (line.kind === 'data' && line.key === 'GC') stateSeen = true;
-        if (line.kind !== 'ok' && line.kind !== 'error') return false;
-        answers += 1;
-        if (!stateSeen && answers >= 2) {
-          cancelQuiet = this.#clock.at(this.#clock.monotonicMs() + resyncPauseMs, () => this.#finish());
+        const verdict = watch.take(line);
+        if (verdict === 'perhaps') {
+          const quietMs = this.#printsState ? statePauseMs : resyncPauseMs;
+          cancelQuiet = this.#clock.at(this.#clock.monotonicMs() + quietMs, () => this.#finish());
         }
-        return stateSeen;
+        return verdict === 'agreed';
       };
       try {
-        const lines = await this.#ask('resync', '#\n$G\n', { withinMs: resyncWithinMs, signal }, done);
-        // Answers to the rounds before may still be on their way; with no exchange open they count for nothing.
-        if (round > 0) await this.#clock.sleep(resyncPauseMs, signal);
+        const lines = await this.#ask('resync', watch.wire, { withinMs: resyncWithinMs, signal }, done);
         this.#outOfStep = false;
         return lines;
       } catch (error) {
@@ -214,7 +182,7 @@ export class GcodeSender {
   #ask(
     text: string,
     wire: string,
-    { withinMs, signal }: LineOptions,
+    { withinMs, signal, onSend }: LineOptions,
     done?: (line: ControllerLine) => boolean,
   ): Promise<ControllerLine[]> {
     return new Promise((resolve, reject) => {
@@ -241,10 +209,11 @@ export class GcodeSender {
       };
       const onAbort = (): void => exchange.reject(signal?.reason);
       const cancel = this.#clock.at(this.#clock.monotonicMs() + withinMs, () =>
-        exchange.reject(this.#notAnswering(text, withinMs)),
+        exchange.reject(notAnsweringError(text, withinMs, this.#link.name)),
       );
       signal?.addEventListener('abort', onAbort, { once: true });
       this.#exchange = exchange;
+      onSend?.();
       this.#note('sent', wire.trimEnd());
       this.#write(new TextEncoder().encode(wire));
     });
@@ -265,6 +234,7 @@ export class GcodeSender {
   }
 
   #answered(line: ControllerLine): void {
+    if (isParserState(line)) this.#printsState = true;
     const exchange = this.#exchange;
     if (!exchange) {
       this.#events.next({ kind: 'stray', line });
@@ -277,13 +247,7 @@ export class GcodeSender {
       this.#finish();
     } else if (line.kind === 'error') {
       // Some firmwares go on refusing until they are asked something else: being out of step sees to that.
-      exchange.reject(
-        new DriverError(
-          'POSITIONER_COMMAND_REFUSED',
-          `${this.#link.name} refused ${exchange.text}: ${refusalMeaning(line.number)}`,
-          { line: exchange.text, error: line.number, meaning: refusalMeaning(line.number) },
-        ),
-      );
+      exchange.reject(refusedError(line.number, exchange.text, this.#link.name));
     }
   }
 
@@ -314,7 +278,7 @@ export class GcodeSender {
   #closed(news: LinkClosed): void {
     this.#splitter.clear();
     this.#outOfStep = true;
-    this.#exchange?.reject(this.#linkClosed(news));
+    this.#exchange?.reject(linkClosedError(this.#link.name, news));
     this.#events.next({ kind: 'closed', news });
   }
 
@@ -324,37 +288,15 @@ export class GcodeSender {
   }
 
   #checkOpen(): void {
-    if (!this.#link.isOpen) throw this.#linkClosed();
+    if (!this.#link.isOpen) throw linkClosedError(this.#link.name);
   }
 
-  #linkClosed(news?: LinkClosed): DriverError {
-    const facts = { link: this.#link.name, ...(news ? { by: news.by } : {}) };
-    return new DriverError('LINK_CLOSED', `${this.#link.name} is closed`, facts, news?.cause);
-  }
-
-  #notAnswering(line: string, withinMs: number): DriverError {
-    return new DriverError(
-      'POSITIONER_NOT_ANSWERING',
-      `${this.#link.name} did not answer ${line} in ${withinMs} ms`,
-      { line, withinMs },
-    );
+  #throwIfClosed(event: SenderEvent): undefined {
+    if (event.kind === 'closed') throw linkClosedError(this.#link.name, event.news);
+    return undefined;
   }
 
   #note(direction: 'sent' | 'received', text: string): void {
     this.#onTraffic?.(direction, text, this.#clock.monotonicMs());
   }
-}
-
-/** POSITIONER_ALARM with what the number means and whether the position survived. */
-export function alarmError(number: number | undefined, link: string): DriverError {
-  if (number === undefined) {
-    return new DriverError('POSITIONER_ALARM', `${link} is locked by an alarm`, { positionKnown: false });
-  }
-  const { meaning, positionKnown, wayOut } = alarmMeaning(number);
-  return new DriverError('POSITIONER_ALARM', `${link}: alarm ${number}, ${meaning}`, {
-    alarm: number,
-    meaning,
-    positionKnown,
-    wayOut,
-  });
 }

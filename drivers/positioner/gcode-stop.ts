@@ -4,18 +4,11 @@
 //   no hold in time, or nothing answered:    soft reset  ──►  …                               position doubtful
 //   at rest:  ?  ──►  two reports alike; no hold, which would lock an idle controller
 import { DriverError, isDriverError } from '../errors.ts';
-import {
-  brakingMs,
-  type GcodeParts,
-  noteMemory,
-  pollMs,
-  readPlaced,
-  samePlace,
-  setModes,
-} from './gcode-parts.ts';
+import { urgentBytes } from './gcode-events.ts';
+import { fallToZero, noteMemory, setModes } from './gcode-memory.ts';
+import { brakingMs, type GcodeParts, pollMs, readPlaced, samePlace } from './gcode-parts.ts';
 import type { Placed } from './gcode-reference.ts';
 import { isHeld, isMoving } from './gcode-reports.ts';
-import { urgentBytes } from './gcode-sender.ts';
 import type { StopReport } from './positioner.ts';
 
 const holdGraceMs = 1_500;
@@ -173,15 +166,18 @@ async function confirm(parts: GcodeParts, calledMs: number, rest?: Placed): Prom
  * before: there only the fall of the position to zero is left.
  */
 async function markMemoryAgain(parts: GcodeParts): Promise<void> {
-  if (parts.reference.last?.report.state === 'Idle') await whereAnswered(parts, setModes);
+  const { last } = parts.reference;
+  if (last?.report.state !== 'Idle') return;
+  fallToZero(parts, last);
+  await whereAnswered(parts, setModes);
 }
 
-/** The axes stand, whether or not this is answered; without the mark an unseen restart is merely found later. */
+/** The axes stand, whether or not this is answered; the mark is then set before the next move. */
 async function whereAnswered(parts: GcodeParts, act: (parts: GcodeParts) => Promise<void>): Promise<void> {
   try {
     await act(parts);
   } catch (error) {
     if (!isDriverError(error)) throw error;
-    parts.memoryMark = false;
+    parts.memoryMark = 'missing';
   }
 }

@@ -1,7 +1,8 @@
 import { describe, expect, it } from 'vitest';
 import type { Link } from '../../../../drivers/link/link.ts';
 import { MemoryPort } from '../../../../drivers/link/memory.ts';
-import { GcodeSender, type SenderEvent } from '../../../../drivers/positioner/gcode-sender.ts';
+import type { SenderEvent } from '../../../../drivers/positioner/gcode-events.ts';
+import { GcodeSender } from '../../../../drivers/positioner/gcode-sender.ts';
 import { SimulatedClock } from '../../../../mocks/simulated-clock.ts';
 
 const withinMs = 1_000;
@@ -82,16 +83,33 @@ describe('GcodeSender', () => {
     });
   });
 
-  it('waits out the answers to a first attempt at agreeing', async () => {
+  it('tells the answers to a second attempt at agreeing from those to the first', async () => {
     const { clock, sender, heard, say, wait } = await makeWire();
     const agreeing = sender.resync();
     const next = sender.line('G90', { withinMs });
     await wait(1_600);
-    expect(heard).toEqual(['#\n$G\n', '#\n$G\n']);
+    expect(heard).toEqual(['#\n$G\n', '#\n#\n$G\n']);
     say('error:1\n[GC:F0]\nok\n');
-    await wait(100);
-    say('error:1\n[GC:F0]\nok\n');
+    await wait(600);
+    expect(heard.at(-1)).toBe('#\n#\n$G\n');
+    say('error:1\nerror:1\n[GC:F0]\nok\n');
     await clock.run(agreeing);
+    await wait(10);
+    expect(heard.at(-1)).toBe('G90\n');
+    say('ok\n');
+    expect(await clock.run(next)).toEqual([{ kind: 'ok' }]);
+  });
+
+  it('does not take a parser state that was owed for the one it asked for to agree', async () => {
+    const { clock, sender, heard, say, wait } = await makeWire();
+    const owed = sender.line('$G', { withinMs: 100 });
+    await expect(clock.run(owed)).rejects.toMatchObject({ code: 'POSITIONER_NOT_ANSWERING' });
+    const next = sender.line('G90', { withinMs });
+    await wait(10);
+    say('[GC:F0]\nok\n');
+    await wait(50);
+    expect(heard.at(-1)).toBe('#\n$G\n');
+    say('error:1\n[GC:F0]\nok\n');
     await wait(10);
     expect(heard.at(-1)).toBe('G90\n');
     say('ok\n');
