@@ -35,7 +35,8 @@ export type ControllerLine =
   | { kind: 'empty' }
   | { kind: 'unknown'; text: string };
 
-const bannerLine = /^Grbl(?:HAL)? \d+\.\d+\S* \[/i;
+/** Firmwares of the family put their own name behind the first four letters, and more words before the bracket. */
+const bannerLine = /^Grbl[\w-]* v?\d+\.\d+\S* (?:\S+ )?\[/i;
 const foreignLine = /^(?:start$|echo:|FIRMWARE_NAME:|Cap:|Marlin\b|Resend:|Error:|X:-?[\d.]+ Y:.*Count)/;
 const reportLine = /^<([A-Z][A-Za-z]*)(?::(\d+))?((?:\|[^|<>]*)*)>$/;
 const plainNumber = /^-?\d+(?:\.\d*)?$/;

@@ -8,28 +8,12 @@ import { LineSplitter } from '../link/lines.ts';
 import type { Link, LinkClosed } from '../link/link.ts';
 import { AgreementWatch, isParserState } from './gcode-agreement.ts';
 import { nextEvent, type SenderEvent, urgentBytes } from './gcode-events.ts';
+import { GcodeExchange, type LineOptions } from './gcode-exchange.ts';
 import { alarmError, linkClosedError, notAnsweringError, refusedError } from './gcode-failures.ts';
 import { type ControllerLine, readLine, type StatusReport } from './gcode-reports.ts';
 
 /** Called for every line and urgent byte, for a log of the wire. */
 export type OnTraffic = (direction: 'sent' | 'received', text: string, monotonicMs: number) => void;
-
-export interface LineOptions {
-  withinMs: number;
-  signal?: AbortSignal | undefined;
-  /** Called right before the bytes leave, when both sides are in step. */
-  onSend?: () => void;
-}
-
-interface Exchange {
-  text: string;
-  /** Lines that came before the answer: settings, identity and the like. */
-  lines: ControllerLine[];
-  /** Answers that close the exchange with `true`; undefined for the plain rule of one answer. */
-  done: ((line: ControllerLine) => boolean) | undefined;
-  resolve: (lines: ControllerLine[]) => void;
-  reject: (why: unknown) => void;
-}
 
 const resyncRounds = 3;
 const resyncWithinMs = 1_500;
@@ -37,6 +21,7 @@ const resyncPauseMs = 250;
 /** For a parser state that has been seen before, and may only be late. */
 const statePauseMs = 1_000;
 const reportTries = 3;
+const resetTries = 2;
 const reportWithinMs = 1_000;
 
 export class GcodeSender {
@@ -45,7 +30,7 @@ export class GcodeSender {
   readonly #onTraffic: OnTraffic | undefined;
   readonly #splitter = new LineSplitter();
   readonly #events = new Subject<SenderEvent>();
-  #exchange: Exchange | undefined;
+  #exchange: GcodeExchange | undefined;
   #queue: Promise<unknown> = Promise.resolve();
   #outOfStep = true;
   #resetAsked = false;
@@ -125,18 +110,30 @@ export class GcodeSender {
     throw notAnsweringError('?', reportTries * reportWithinMs, this.#link.name);
   }
 
-  /** Soft reset; resolves with the banner. Throws POSITIONER_NOT_ANSWERING when none comes in time. */
+  /**
+   * Soft reset; resolves with the banner. Where it was lost, a report that shows neither hold nor motion must do,
+   * and the banner is empty. Throws POSITIONER_NOT_ANSWERING after `withinMs`.
+   */
   async reset(withinMs: number, signal?: AbortSignal): Promise<string> {
-    this.#resetAsked = true;
-    try {
-      const banner = this.next((event) => (event.kind === 'restart' ? event : undefined), withinMs, signal);
-      this.urgent(urgentBytes.softReset);
-      const seen = await banner;
-      if (!seen) throw notAnsweringError('soft reset', withinMs, this.#link.name);
-      return seen.banner;
-    } finally {
-      this.#resetAsked = false;
+    // A banner comes within half a second, with an alarm ahead of it within one; half as long for a report.
+    const tryMs = withinMs / resetTries / 1.5;
+    for (let tried = 0; tried < resetTries; tried += 1) {
+      this.#resetAsked = true;
+      try {
+        const banner = this.next((event) => (event.kind === 'restart' ? event : undefined), tryMs, signal);
+        this.urgent(urgentBytes.softReset);
+        const seen = await banner;
+        if (seen) return seen.banner;
+        const { report } = (await this.askReport(tryMs / 2, signal)) ?? {};
+        if (report?.state === 'Idle' || report?.state === 'Alarm') {
+          this.#restarted('');
+          return '';
+        }
+      } finally {
+        this.#resetAsked = false;
+      }
     }
+    throw notAnsweringError('soft reset', withinMs, this.#link.name);
   }
 
   /** See nextEvent; LINK_CLOSED when the link closes meanwhile. */
@@ -162,7 +159,7 @@ export class GcodeSender {
         const verdict = watch.take(line);
         if (verdict === 'perhaps') {
           const quietMs = this.#printsState ? statePauseMs : resyncPauseMs;
-          cancelQuiet = this.#clock.at(this.#clock.monotonicMs() + quietMs, () => this.#finish());
+          cancelQuiet = this.#clock.at(this.#clock.monotonicMs() + quietMs, () => this.#exchange?.finish());
         }
         return verdict === 'agreed';
       };
@@ -179,44 +176,25 @@ export class GcodeSender {
     }
   }
 
-  #ask(
+  async #ask(
     text: string,
     wire: string,
     { withinMs, signal, onSend }: LineOptions,
     done?: (line: ControllerLine) => boolean,
   ): Promise<ControllerLine[]> {
-    return new Promise((resolve, reject) => {
-      signal?.throwIfAborted();
-      this.#checkOpen();
-      const settle = (): void => {
-        this.#exchange = undefined;
-        cancel();
-        signal?.removeEventListener('abort', onAbort);
-      };
-      const exchange: Exchange = {
-        text,
-        lines: [],
-        done,
-        resolve: (lines) => {
-          settle();
-          resolve(lines);
-        },
-        reject: (why) => {
-          settle();
-          this.#outOfStep = true;
-          reject(why);
-        },
-      };
-      const onAbort = (): void => exchange.reject(signal?.reason);
-      const cancel = this.#clock.at(this.#clock.monotonicMs() + withinMs, () =>
-        exchange.reject(notAnsweringError(text, withinMs, this.#link.name)),
-      );
-      signal?.addEventListener('abort', onAbort, { once: true });
-      this.#exchange = exchange;
-      onSend?.();
-      this.#note('sent', wire.trimEnd());
-      this.#write(new TextEncoder().encode(wire));
-    });
+    signal?.throwIfAborted();
+    this.#checkOpen();
+    const onEnd = (failed: boolean): void => {
+      this.#exchange = undefined;
+      if (failed) this.#outOfStep = true;
+    };
+    const parts = { text, done, withinMs, signal, clock: this.#clock, link: this.#link.name, onEnd };
+    const exchange = new GcodeExchange(parts);
+    this.#exchange = exchange;
+    onSend?.();
+    this.#note('sent', wire.trimEnd());
+    this.#write(new TextEncoder().encode(wire));
+    return exchange.outcome;
   }
 
   #receive(text: string): void {
@@ -242,24 +220,20 @@ export class GcodeSender {
     }
     exchange.lines.push(line);
     if (exchange.done) {
-      if (exchange.done(line)) this.#finish();
+      if (exchange.done(line)) this.#exchange?.finish();
     } else if (line.kind === 'ok') {
-      this.#finish();
+      this.#exchange?.finish();
     } else if (line.kind === 'error') {
       // Some firmwares go on refusing until they are asked something else: being out of step sees to that.
-      exchange.reject(refusedError(line.number, exchange.text, this.#link.name));
+      exchange.fail(refusedError(line.number, exchange.text, this.#link.name));
     }
-  }
-
-  #finish(): void {
-    this.#exchange?.resolve(this.#exchange.lines);
   }
 
   #alarmed(number: number): void {
     this.#outOfStep = true;
     this.#events.next({ kind: 'alarm', number });
     // The `ok` that may still follow is none: the exchange ends here.
-    this.#exchange?.reject(alarmError(number, this.#link.name));
+    this.#exchange?.fail(alarmError(number, this.#link.name));
   }
 
   #restarted(banner: string): void {
@@ -267,7 +241,7 @@ export class GcodeSender {
     this.#resetAsked = false;
     this.#outOfStep = true;
     this.#events.next({ kind: 'restart', banner, asked });
-    this.#exchange?.reject(
+    this.#exchange?.fail(
       new DriverError('POSITIONER_RESTARTED', `${this.#link.name} restarted`, {
         line: this.#exchange.text,
         banner,
@@ -278,13 +252,13 @@ export class GcodeSender {
   #closed(news: LinkClosed): void {
     this.#splitter.clear();
     this.#outOfStep = true;
-    this.#exchange?.reject(linkClosedError(this.#link.name, news));
+    this.#exchange?.fail(linkClosedError(this.#link.name, news));
     this.#events.next({ kind: 'closed', news });
   }
 
   #write(bytes: Uint8Array): void {
     // With no exchange open the link's own `closed` event tells, or the report that does not come.
-    this.#link.write(bytes).catch((error: unknown) => this.#exchange?.reject(error));
+    this.#link.write(bytes).catch((error: unknown) => this.#exchange?.fail(error));
   }
 
   #checkOpen(): void {

@@ -9,6 +9,8 @@ export interface ControllerQuirks {
   resetsOnConnect: boolean;
   /** Banners of restarts that nobody asked for never arrive. */
   bannerLost: boolean;
+  /** Neither do those of resets that were asked for. */
+  resetsSilently: boolean;
   /** Locked after power-up: motion gives error:9. */
   lockedAtStart: boolean;
   lineEnd: '\r\n' | '\n';
@@ -67,6 +69,7 @@ export const plainController: ControllerQuirks = {
   bootMs: 25,
   resetsOnConnect: true,
   bannerLost: false,
+  resetsSilently: false,
   lockedAtStart: false,
   lineEnd: '\r\n',
   version: '[VER:1.1h.20190830:]',

@@ -352,7 +352,7 @@ export class QuirkyController {
     if (alarms) this.#say('ALARM:3', ...(wasBusy ? ['ok'] : []));
     this.#after(20, () => {
       this.#state = locked ? 'Alarm' : 'Idle';
-      this.#say('', this.quirks.banner, ...this.#lockRemark());
+      if (!this.quirks.resetsSilently) this.#say('', this.quirks.banner, ...this.#lockRemark());
     });
   }
 

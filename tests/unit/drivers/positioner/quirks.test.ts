@@ -73,6 +73,19 @@ const troubles: Record<string, { job: PositionerJob; codes: DriverErrorCode[]; a
     codes: ['POSITIONER_STOPPED'],
     arrivals: 2,
   },
+  'a stop, the banner of another firmware': {
+    job: {
+      quirks: { banner: "GrblMotion 3.0 [stage 3.0.1 '$' for help]" },
+      moves: far({ kind: 'stop', afterMs: 1_000 }),
+    },
+    codes: ['POSITIONER_STOPPED'],
+    arrivals: 2,
+  },
+  'a stop whose banner is lost': {
+    job: { quirks: { resetsSilently: true }, moves: far({ kind: 'stop', afterMs: 1_000 }) },
+    codes: ['POSITIONER_STOPPED'],
+    arrivals: 2,
+  },
   'a stop before the first line': {
     job: { quirks: {}, moves: far({ kind: 'stop', afterMs: 1 }) },
     codes: ['POSITIONER_STOPPED'],
@@ -222,6 +235,7 @@ describe('any mixture of habits', () => {
     const rough: fc.Arbitrary<Partial<ControllerQuirks>> = fc.record(
       {
         bannerLost: fc.boolean(),
+        resetsSilently: fc.boolean(),
         slowOkMs: fc.constantFrom(1_700, 3_500, 9_000),
         lostReports: fc.constantFrom(0, 0.05, 0.3),
         lostOks: fc.constantFrom(0, 0.02, 0.1),
