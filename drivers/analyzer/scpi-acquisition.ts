@@ -1,7 +1,7 @@
 // One acquisition: averaging cleared, as many sweeps started as an average needs, their end awaited by
 // polling, the traces read, and the grid looked at once more, for the front panel may change anything.
 //
-//   ESR read (stale bits) ─► averaging cleared ─► [ INIT, *OPC, poll ESR until bit 0 ] × starts
+//   ESR read (stale bits, until bit 0 is clear) ─► averaging cleared ─► [ INIT, *OPC, poll ESR until bit 0 ] × starts
 //   ─► for each parameter: select, read ─► ESR (a refused select?) ─► axis, or start, stop, points
 //
 // `*OPC?` is never asked: it makes the instrument deaf, and a late "1" would shift all later answers.
@@ -11,6 +11,8 @@ import type { ScpiConversation } from './scpi-conversation.ts';
 import { confirmAxis, confirmGrid, type InstrumentSweep } from './scpi-setup.ts';
 import { anyErrorBits, eventBits } from './scpi-status.ts';
 
+/** One is enough for a register that works, two where an end of before stood in it. */
+const clearingReads = 3;
 const firstPollMs = 2;
 const pollGrowth = 1.5;
 /** Between two polls at most: this, or in a long sweep a twentieth of it, which is what an early end costs. */
@@ -30,7 +32,7 @@ export async function runSweeps(
   sweep: InstrumentSweep,
   answerTimeoutMs: number,
 ): Promise<SweepRun> {
-  await judgeEvents(talk, await talk.readEvents(), 'between two sweeps', { mayBeStale: true });
+  await clearEvents(talk);
   if (sweep.averages > 1) await talk.tell('averagingClear');
   const startedMs: number[] = [];
   for (let start = 0; start < sweep.starts; start += 1) {
@@ -66,6 +68,22 @@ async function awaitEnd(
     if (events & eventBits.operationComplete) return;
     if (leftMs <= 0) throw await sweepTimeout(talk, sweep, deadlineMs - begunMs);
   }
+}
+
+/** Reads the event register, which clears it: an end of before must not be taken for that of the next sweep. */
+async function clearEvents(talk: ScpiConversation): Promise<void> {
+  for (let read = 0; read < clearingReads; read += 1) {
+    const events = await talk.readEvents();
+    await judgeEvents(talk, events, 'between two sweeps', { mayBeStale: true });
+    if ((events & eventBits.operationComplete) === 0) return;
+    // An instrument that keeps the bit over a read may still drop it when told to clear everything.
+    if (read > 0) await talk.tellPlain('*CLS');
+  }
+  throw new DriverError(
+    'ANALYZER_DEVICE_ERROR',
+    'the event register says without end that an operation is complete: the end of a sweep could not be told',
+    { reads: clearingReads },
+  );
 }
 
 /** Growing pauses, one of which ends just when the sweep should; from there they begin anew, short. */

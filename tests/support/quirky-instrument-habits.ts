@@ -21,6 +21,8 @@ export interface InstrumentQuirks {
   deafWhileSweeping: boolean;
   /** Bit 0 of the event register is set when the instrument is first met. */
   staleOperationComplete: boolean;
+  /** Reading the event register leaves bit 0 in it; `until-cleared`: `*CLS` takes it away. */
+  completeSticks: 'no' | 'until-cleared' | 'for-ever';
   /** Knows `*OPC`. */
   operationComplete: boolean;
   averaging: 'by-point' | 'start-each' | 'start-all';
@@ -70,6 +72,7 @@ export const plainInstrument: InstrumentQuirks = {
   sweepMs: 150,
   deafWhileSweeping: false,
   staleOperationComplete: false,
+  completeSticks: 'no',
   operationComplete: true,
   averaging: 'by-point',
   bandwidths: undefined,

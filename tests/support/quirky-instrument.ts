@@ -236,10 +236,10 @@ export class QuirkyInstrument {
     else if (name === '*ESE') return this.#number(this.#enable);
     else if (name === '*ESR' && asks) {
       const events = this.#events;
-      this.#events = 0;
+      this.#events = this.quirks.completeSticks === 'no' ? 0 : events & 1;
       return this.#number(events);
     } else if (name === '*CLS') {
-      this.#events = 0;
+      this.#events = this.quirks.completeSticks === 'for-ever' ? this.#events & 1 : 0;
       this.#errors = [];
       this.#endWanted = false;
     } else if (name === '*OPC' && !asks && this.quirks.operationComplete) {

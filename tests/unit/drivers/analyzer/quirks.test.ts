@@ -33,6 +33,9 @@ const harmless: Record<string, AnalyzerJob> = {
   'deaf while sweeping': { quirks: { deafWhileSweeping: true } },
   'deaf while sweeping for 20 s': { quirks: { deafWhileSweeping: true, sweepMs: 20_000 } },
   'operation complete of before': { quirks: { staleOperationComplete: true } },
+  'operation complete that only *CLS takes away': {
+    quirks: { staleOperationComplete: true, completeSticks: 'until-cleared', oldDataReadable: true },
+  },
   'average by N starts': { quirks: { averaging: 'start-each' }, setup: { averages: 4 } },
   'average by one start': { quirks: { averaging: 'start-all' }, setup: { averages: 4 } },
   'average by point': { quirks: { averaging: 'by-point' }, setup: { averages: 4 } },
@@ -81,6 +84,11 @@ const hopeless: Record<string, { job: AnalyzerJob; codes: DriverErrorCode[]; acq
   'no *OPC': {
     job: { quirks: { operationComplete: false } },
     codes: ['ANALYZER_COMMAND_REFUSED'],
+    acquired: 0,
+  },
+  'operation complete for ever': {
+    job: { quirks: { staleOperationComplete: true, completeSticks: 'for-ever', oldDataReadable: true } },
+    codes: ['ANALYZER_DEVICE_ERROR'],
     acquired: 0,
   },
   silence: { job: { quirks: { silent: true } }, codes: ['ANALYZER_NOT_ANSWERING'], acquired: 0 },
@@ -194,6 +202,7 @@ describe('any mixture of habits', () => {
     const rough: fc.Arbitrary<Partial<InstrumentQuirks>> = fc.record(
       {
         bandwidths: fc.constantFrom([1000], [300, 3000]),
+        completeSticks: fc.constantFrom('no', 'until-cleared', 'for-ever'),
         operationComplete: fc.constantFrom(true, true, true, false),
         blockTail: fc.constantFrom('\n', '\n\n', 'xyz\n', '12\n'),
         halfBlockAt: fc.integer({ min: 1, max: 8 }),
