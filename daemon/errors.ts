@@ -188,12 +188,14 @@ export const adviceTable: Readonly<Record<ErrorCode, Advice>> = {
   },
   POSITIONER_RESTARTED: {
     meaning: 'The controller restarted and has forgotten its position.',
-    nextStep: 'Check its supply; the next run homes and ties before it trusts an angle.',
+    nextStep:
+      'Check its supply. Axes without a home switch: bring them to boresight by hand, set the zero there, and measure with --zero-is-true.',
     exitCode: hardware,
   },
   POSITIONER_REFERENCE_LOST: {
     meaning: 'The position is no longer known; no angle may be trusted.',
-    nextStep: 'Bring the axes to boresight by hand if they have no home switch, then measure again.',
+    nextStep:
+      'Axes without a home switch: bring them to boresight by hand, set the zero of the controller there, and measure with --zero-is-true.',
     exitCode: hardware,
   },
   POSITIONER_HELD: {
@@ -259,7 +261,8 @@ export const adviceTable: Readonly<Record<ErrorCode, Advice>> = {
   REFERENCE_DOES_NOT_FIT: {
     meaning:
       'The gain reference does not fit the plan: other frequencies, other range, or too short a table.',
-    nextStep: 'Measure the reference antenna with the same band, points and settings.',
+    nextStep:
+      'Measure the reference antenna with the same band and points, under the name of its gain table.',
     exitCode: badInput,
   },
   ARCHIVE_UNUSABLE: {

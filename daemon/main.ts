@@ -3,6 +3,12 @@
 import { SystemClock } from '../drivers/clock.ts';
 import { runCommandLine } from './cli/command-line.ts';
 
+// A reader that has seen enough (`| head`) closes the pipe; that is no failure of ours.
+process.stdout.on('error', (error: NodeJS.ErrnoException) => {
+  if (error.code !== 'EPIPE') throw error;
+  process.exit();
+});
+
 process.exitCode = await runCommandLine(process.argv.slice(2), {
   clock: new SystemClock(),
   stdout: process.stdout,

@@ -3,6 +3,12 @@
 import { SystemClock } from '../drivers/clock.ts';
 import { runMockCommandLine } from './command-line.ts';
 
+// A reader that has seen enough (`| head`) closes the pipe; that is no failure of ours.
+process.stdout.on('error', (error: NodeJS.ErrnoException) => {
+  if (error.code !== 'EPIPE') throw error;
+  process.exit();
+});
+
 process.exitCode = await runMockCommandLine(process.argv.slice(2), {
   clock: new SystemClock(),
   stdin: process.stdin,

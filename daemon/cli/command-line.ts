@@ -15,7 +15,7 @@ export async function runCommandLine(args: readonly string[], outside: Surroundi
     exitCode = code;
   };
   const program = new Command('nightcut')
-    .description('Measures antennas at night: pattern, gain and match, with what each figure is worth.')
+    .description('Measures antennas: pattern, gain and match, every sample kept.')
     .version(programVersion, '--version')
     .exitOverride()
     .configureOutput({

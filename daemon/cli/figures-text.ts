@@ -23,8 +23,9 @@ const labels: Readonly<Record<CutFigureKey, [label: string, unit: string, digits
 
 export function renderFigures(document: FiguresDocument): string {
   const parts = [renderHead(document)];
+  const measured = document.cuts.filter((cut) => cut.anglesDeg.length > 0);
   for (const index of shownFrequencies(document)) {
-    if (document.cuts.length > 0) parts.push(renderFrequency(document, index));
+    if (measured.length > 0) parts.push(renderFrequency({ ...document, cuts: measured }, index));
   }
   if (document.match) parts.push(renderMatch(document, document.match));
   parts.push(renderFlags(document));
@@ -85,19 +86,30 @@ function renderFrequency({ frequenciesHz, cuts }: FiguresDocument, index: number
     ...cuts.map((cut) => `${printable(cut.name)} (${cut.plane === 'other' ? 'cut' : `${cut.plane}-plane`})`),
     '',
   ];
-  const notes = reasons.map((reason, number) => `(${number + 1}) ${reason}\n`).join('');
+  const notes = reasons.map((reason, number) => `(${number + 1}) ${trueMinus(reason)}\n`).join('');
   return renderTable(header, rows) + notes;
 }
 
+/** The notes of the document are plain text; here minus signs are those of the numbers beside them. */
+function trueMinus(text: string): string {
+  return text.replace(/(?<![\w.])-(?=\d)/g, '−');
+}
+
 function renderEntry(entry: Exclude<FigureEntry, { absent: string }>, digits: number): string {
-  const sign = entry.bound === 'upper' ? '≤ ' : entry.bound === 'lower' ? '≥ ' : '';
   const spread = entry.U === undefined ? '' : ` ± ${entry.U.toFixed(digits)}`;
-  return `${sign}${renderNumber(entry.value, digits)}${spread}`;
+  return `${boundSign(entry)}${renderNumber(entry.value, digits)}${spread}`;
+}
+
+function boundSign({ bound }: { bound?: 'upper' | 'lower' | undefined }): string {
+  return bound === 'upper' ? '≤ ' : bound === 'lower' ? '≥ ' : '';
 }
 
 function renderMatch(document: FiguresDocument, match: NonNullable<FiguresDocument['match']>): string {
-  const inMegahertz = (entry: FigureEntry): string =>
-    'absent' in entry ? `none: ${entry.absent}` : `${renderMegahertz(entry.value)} MHz`;
+  const inMegahertz = (entry: FigureEntry): string => {
+    if ('absent' in entry) return `none: ${entry.absent}`;
+    const note = entry.note === undefined ? '' : ` (${entry.note})`;
+    return `${boundSign(entry)}${(entry.value / 1e6).toFixed(2)} MHz${note}`;
+  };
   const lines = [
     `best match   ${inMegahertz(match.bestMatchHz)}`,
     `resonance    ${inMegahertz(match.resonanceHz)}`,

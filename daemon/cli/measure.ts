@@ -20,6 +20,7 @@ interface MeasureOptions {
   range: string;
   archive?: string;
   json?: boolean;
+  zeroIsTrue?: boolean;
 }
 
 export function addMeasureCommand(program: Command, outside: Surroundings, finish: Finish): void {
@@ -30,6 +31,10 @@ export function addMeasureCommand(program: Command, outside: Surroundings, finis
     .option('--range <path>', 'what stands on the site', 'range.yaml')
     .option('--archive <path>', 'where runs are kept; the range file names it otherwise')
     .option('--json', 'print the figures as one JSON document')
+    .option(
+      '--zero-is-true',
+      'axes without a home switch stand where the controller counts them: I have looked',
+    )
     .action(async (planPath: string, options: MeasureOptions) => {
       const range = await loadRangeFile(options.range);
       const plan = await loadPlan(planPath);
@@ -48,7 +53,13 @@ async function measure(
   const archivePath = options.archive ? resolve(options.archive) : range.archive;
   const archive = await openArchive(archivePath);
   try {
-    const outcome = await executeWatched(range, await order.complete(archive), archive, archivePath, outside);
+    const outcome = await executeWatched(
+      range,
+      await order.complete(archive, { zeroIsTrue: options.zeroIsTrue ?? false }),
+      archive,
+      archivePath,
+      outside,
+    );
     await printRun(archive, outcome.run.number, { json: options.json ?? false }, outside);
     reportOutcome(outcome, outside);
     finish(outcome.error === undefined ? exitCodes.done : adviceOf(outcome.error).exitCode);

@@ -1,6 +1,16 @@
 // The log beside the archive: one JSON line per happening, with the bytes of whatever could not be read.
 import pino, { type Logger } from 'pino';
+import { DaemonError } from '../errors.ts';
 import type { RunEvent } from '../run/events.ts';
+
+function openDestination(path: string): pino.DestinationStream {
+  try {
+    return pino.destination({ dest: path, sync: true });
+  } catch (cause) {
+    const why = cause instanceof Error ? cause.message : String(cause);
+    throw new DaemonError('ARCHIVE_UNUSABLE', `${path}: the log cannot be written: ${why}`, { path }, cause);
+  }
+}
 
 export interface RunLog {
   note(event: RunEvent): void;
@@ -9,10 +19,7 @@ export interface RunLog {
 
 /** `path` is the archive's path with `.log` added; the folder exists because the archive is in it. */
 export function openRunLog(path: string): RunLog {
-  const log: Logger = pino(
-    { base: null, timestamp: pino.stdTimeFunctions.isoTime },
-    pino.destination({ dest: path, sync: true }),
-  );
+  const log: Logger = pino({ base: null, timestamp: pino.stdTimeFunctions.isoTime }, openDestination(path));
   return {
     note(event) {
       if (event.kind === 'sample') {

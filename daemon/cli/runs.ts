@@ -1,7 +1,7 @@
 // `nightcut runs` and `nightcut show RUN`: what the archive holds, and the figures of one run.
 import { existsSync } from 'node:fs';
 import { resolve } from 'node:path';
-import { type Command, InvalidArgumentError } from 'commander';
+import type { Command } from 'commander';
 import type { Archive } from '../archive/archive.ts';
 import { openArchive } from '../archive/open-archive.ts';
 import { DaemonError } from '../errors.ts';
@@ -31,11 +31,14 @@ export function addRunsCommands(program: Command, outside: Surroundings, _finish
       .description('figures of one run')
       .argument('<run>', 'number of the run, as `runs` lists it', runNumber)
       .option('--levels', 'with --json: also the level at every angle, for plots'),
-  ).action((run: number, options: ShowOptions) =>
-    onArchive(options, (archive) =>
+  ).action((run: number, options: ShowOptions) => {
+    if (options.levels && !options.json) {
+      throw new DaemonError('USAGE_WRONG', '--levels goes with --json: levels are for other programs');
+    }
+    return onArchive(options, (archive) =>
       printRun(archive, run, { json: options.json ?? false, levels: options.levels ?? false }, outside),
-    ),
-  );
+    );
+  });
 }
 
 function withArchive(command: Command): Command {
@@ -49,7 +52,11 @@ async function onArchive(options: ArchiveOptions, act: (archive: Archive) => Pro
   const path = options.archive ? resolve(options.archive) : (await loadRangeFile(options.range)).archive;
   // Reading must not create an archive where there is none.
   if (!existsSync(path)) {
-    throw new DaemonError('FILE_UNREADABLE', `${path}: there is no archive here`, { path });
+    throw new DaemonError(
+      'FILE_UNREADABLE',
+      `${path}: there is no archive here; name one with --archive, or the range file that does with --range`,
+      { path },
+    );
   }
   const archive = await openArchive(path);
   try {
@@ -92,7 +99,9 @@ export async function printRun(
 }
 
 function runNumber(text: string): number {
-  if (!/^[1-9]\d{0,8}$/.test(text)) throw new InvalidArgumentError('expected the number of a run, such as 3');
+  if (!/^[1-9]\d{0,8}$/.test(text)) {
+    throw new DaemonError('USAGE_WRONG', `expected the number of a run, such as 3; found '${text}'`);
+  }
   return Number(text);
 }
 

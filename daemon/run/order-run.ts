@@ -7,11 +7,17 @@ import type { RangeFile } from '../files/range-file.ts';
 import { predictStepsMs } from '../plan/duration.ts';
 import { expandPlan } from '../plan/expand.ts';
 import { findGainReference } from '../results/gain-reference.ts';
+import { lastRest } from './axis-rest.ts';
 import type { RunOrder } from './run-loop.ts';
 
+export interface OrderOptions {
+  /** The operator vouches that the controller counts the axes truly, whatever the last run left. */
+  zeroIsTrue?: boolean;
+}
+
 export interface OrderDraft {
-  /** Looks up the gain reference. Throws REFERENCE_MISSING, REFERENCE_DOES_NOT_FIT. */
-  complete(archive: Archive): Promise<RunOrder>;
+  /** Looks up gain reference and last rest. Throws REFERENCE_MISSING, REFERENCE_DOES_NOT_FIT. */
+  complete(archive: Archive, options?: OrderOptions): Promise<RunOrder>;
 }
 
 /** Throws PLAN_OUTSIDE_TRAVEL, PLAN_AXIS_UNKNOWN; for a reference run REFERENCE_MISSING, REFERENCE_DOES_NOT_FIT. */
@@ -20,8 +26,9 @@ export function orderRun(range: RangeFile, plan: Plan): OrderDraft {
   if (plan.kind === 'reference') refuseUselessReference(range, plan);
   const { axes } = range.positioner;
   return {
-    async complete(archive) {
+    async complete(archive, options = {}) {
       const gainReference = await findGainReference(archive, plan, range);
+      const rest = options.zeroIsTrue ? undefined : await lastRest(archive, range.name);
       return {
         record: {
           kind: plan.kind,
@@ -41,6 +48,7 @@ export function orderRun(range: RangeFile, plan: Plan): OrderDraft {
         steps,
         motionMs: predictStepsMs(steps, axes, 0),
         boresight: Object.fromEntries(axes.map((axis) => [axis.name, axis.boresightDeg])),
+        ...(rest ? { lastRest: rest } : {}),
         autPort: range.analyzer.autPort,
       };
     },
@@ -50,6 +58,13 @@ export function orderRun(range: RangeFile, plan: Plan): OrderDraft {
 /** A reference run from which no gain could be taken is refused before a night is spent on it. */
 function refuseUselessReference(range: RangeFile, plan: Plan): void {
   const { reference } = range;
+  if (reference && reference.name !== plan.antenna.name) {
+    throw new DaemonError(
+      'REFERENCE_DOES_NOT_FIT',
+      `${plan.path}: measures ${plan.antenna.name}, but the gain table of the range file is that of ${reference.name}; give them one name`,
+      { antenna: plan.antenna.name, reference: reference.name },
+    );
+  }
   if (!reference) {
     throw new DaemonError(
       'REFERENCE_MISSING',

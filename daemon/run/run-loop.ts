@@ -9,11 +9,12 @@
 import { type Observable, Subject } from 'rxjs';
 import type { SweepSetup } from '../../drivers/analyzer/analyzer.ts';
 import type { Clock } from '../../drivers/clock.ts';
-import { isDriverError } from '../../drivers/errors.ts';
+import { DriverError, isDriverError } from '../../drivers/errors.ts';
 import type { Position } from '../../drivers/positioner/positioner.ts';
 import type { Archive, NewRun, RunRef, RunState, SampleRecord } from '../archive/archive.ts';
 import { DaemonError } from '../errors.ts';
 import type { PlannedStep } from '../plan/expand.ts';
+import { type AxisRest, checkUntouched, restEvent, restNow } from './axis-rest.ts';
 import type { Device, RunEvent } from './events.ts';
 import { from, measurePosition, type PositionTools, StepFailure } from './measure-position.ts';
 import { reactionTo, segmentsPerRun, triesPerPosition, waitBeforeRetryMs } from './retry-table.ts';
@@ -29,6 +30,8 @@ export interface RunOrder {
   /** Predicted time of each step without its acquisition. */
   motionMs: readonly number[];
   boresight: Position;
+  /** Where the last run left the axes; absent for the first, or when the operator vouches for the zero. */
+  lastRest?: AxisRest;
   /** The analyzer port of the AUT. */
   autPort: 1 | 2;
 }
@@ -85,6 +88,7 @@ export class RunLoop {
   async execute(signal: AbortSignal): Promise<RunOutcome> {
     try {
       this.#connected = await connect(this.#bench, this.#order.sweep, signal);
+      await this.#checkUntouched(signal);
     } catch (error) {
       await safeStop(this.#bench);
       throw causeOf(error, signal);
@@ -101,7 +105,20 @@ export class RunLoop {
       error = causeOf(thrown, signal);
     }
     const unconfirmed = await safeStop(this.#bench);
+    const rest = await restNow(this.#bench.positioner);
+    await this.#note(restEvent, rest.known ? 'the axes are at rest' : 'where the axes stand is not known', {
+      ...rest,
+    }).catch(() => {});
     return this.#end(run, error, unconfirmed);
+  }
+
+  /** Before anything moves: axes without a home switch must be where the last run left them. */
+  async #checkUntouched(signal: AbortSignal): Promise<void> {
+    const { lastRest } = this.#order;
+    const { positioner } = this.#bench;
+    if (!lastRest || positioner.axes.every((axis) => axis.homing === 'switch')) return;
+    const now = await from('positioner', positioner.readPosition(signal));
+    checkUntouched(positioner.axes, lastRest, now);
   }
 
   async #measure(run: RunRef, connected: Connected, signal: AbortSignal): Promise<void> {
@@ -287,7 +304,10 @@ function causeOf(error: unknown, signal: AbortSignal): unknown {
   if (signal.aborted) {
     return new DaemonError('RUN_INTERRUPTED', 'stopped on request', {}, error);
   }
-  return error instanceof StepFailure ? error.cause : error;
+  if (!(error instanceof StepFailure)) return error;
+  const { cause, device } = error;
+  if (!isDriverError(cause) || !cause.code.startsWith('LINK_')) return cause;
+  return new DriverError(cause.code, `${device}: ${cause.message}`, cause.facts, cause);
 }
 
 const resumableCodes: readonly string[] = ['RUN_INTERRUPTED', 'RUN_GAVE_UP', 'ARCHIVE_WRITE_FAILED'];

@@ -70,7 +70,9 @@ async function measureBoth(bench: SimulatedBench, daemon: Daemon): Promise<numbe
   bench.mount('aut');
   const pattern = await daemon.watched('measure', 'yagi5.plan.yaml');
   if (pattern !== 0) return pattern;
-  const document = JSON.parse(await daemon.answered('show', '2', '--json'));
+  // A kept folder may hold runs of earlier demonstrations.
+  const { runs } = JSON.parse(await daemon.answered('runs', '--json'));
+  const document = JSON.parse(await daemon.answered('show', String(runs[0].number), '--json'));
   say(compareWithTruth(document, bench.truth({ frequenciesHz: document.markersHz })));
   return 0;
 }

@@ -1,6 +1,7 @@
 // The command line as an operator and as other programs meet it, against the simulated bench over sockets: what
 // it prints, its exit codes, and that a mistake in a file is found before any device is spoken to. In this
 // process where that will do, in a process of its own where signals are part of the matter.
+import { mkdir } from 'node:fs/promises';
 import { afterEach, beforeEach, describe, expect, it } from 'vitest';
 import type { SampleRecord } from '../../daemon/archive/archive.ts';
 import { InThreadArchive } from '../../daemon/archive/in-thread-archive.ts';
@@ -308,6 +309,37 @@ describe('trouble with the world', () => {
     expect(err).toMatch(/^nightcut: IF bandwidth[^\n]*1234[^\n]*1500[^\n]*\nANALYZER_SETTING_DIFFERS: /);
     expect(desk.bench.controller.shaftAt(desk.benchClock.monotonicMs())).toEqual([0, 0, 0]);
     expect(desk.bench.instrument.settings.outputOn).toBe(false);
+  });
+
+  it('refuses a false zero after a controller restart, until the operator vouches for it', async () => {
+    await measureReference();
+    const plan = desk.path('pattern.plan.yaml');
+    const restart = (): void => void desk.bench.faults.injectAfter('restart', 60);
+    restart();
+    expect((await desk.run(['measure', plan])).exitCode).toBe(3);
+    const again = await desk.run(['measure', plan]);
+    expect(again.exitCode).toBe(3);
+    expect(again.err).toContain('POSITIONER_REFERENCE_LOST');
+    expect(again.err).toContain('--zero-is-true');
+    expect(again.out).toBe('');
+    const vouched = await desk.run(['measure', plan, '--zero-is-true']);
+    expect(vouched.exitCode).toBe(0);
+  });
+
+  it('names the log when it cannot be written, and measures nothing', async () => {
+    await mkdir(`${desk.archivePath}.log`);
+    const { exitCode, err } = await desk.run(['measure', desk.path('reference.plan.yaml')]);
+    expect(exitCode).toBe(7);
+    expect(err).toContain('the log cannot be written');
+    expect(desk.visitors).toBe(0);
+  });
+
+  it('ends quietly when the reader of its output has seen enough', async () => {
+    await measureReference();
+    const { child, ended } = desk.start(['show', '1', '--json']);
+    child.stdout?.destroy();
+    const { err } = await ended;
+    expect(err).toBe('');
   });
 
   it('ends with 5 when asked to stop, with everything announced in the archive', async () => {

@@ -4,6 +4,7 @@ import type { SampleRecord } from '../../../../daemon/archive/archive.ts';
 import { InThreadArchive } from '../../../../daemon/archive/in-thread-archive.ts';
 import { DaemonError } from '../../../../daemon/errors.ts';
 import type { PlannedStep } from '../../../../daemon/plan/expand.ts';
+import { type AxisRest, lastRest } from '../../../../daemon/run/axis-rest.ts';
 import type { RunEvent } from '../../../../daemon/run/events.ts';
 import { triesPerPosition } from '../../../../daemon/run/retry-table.ts';
 import { RunLoop, type RunOrder, type RunOutcome } from '../../../../daemon/run/run-loop.ts';
@@ -27,6 +28,7 @@ interface Scene {
   positioner?: Trouble;
   homing?: 'switch' | 'none';
   steps?: PlannedStep[];
+  lastRest?: AxisRest;
   during?: (event: RunEvent, tools: { stop: AbortController; clock: SimulatedClock }) => void;
   archive?: (archive: InThreadArchive) => void;
 }
@@ -51,7 +53,11 @@ async function run(scene: Scene = {}): Promise<Result> {
   const archive = InThreadArchive.open(':memory:');
   archives.push(archive);
   scene.archive?.(archive);
-  const loop = new RunLoop({ analyzer, positioner }, archive, clock, orderOf(scene.steps ?? steps(3)));
+  const order = {
+    ...orderOf(scene.steps ?? steps(3)),
+    ...(scene.lastRest ? { lastRest: scene.lastRest } : {}),
+  };
+  const loop = new RunLoop({ analyzer, positioner }, archive, clock, order);
   const stop = new AbortController();
   const events: RunEvent[] = [];
   loop.events$.subscribe((event) => {
@@ -246,6 +252,48 @@ describe('trouble that passes', () => {
     ]);
     const [, second] = await archive.segments(outcome.run.number);
     expect(second?.reason).toContain('POSITIONER_RESTARTED');
+  });
+});
+
+describe('axes without a home switch', () => {
+  const rest = (azimuth: number, known = true) => ({ run: 7, position: { azimuth }, known });
+
+  it('refuses a count that is not where the last run left the axes, before anything moves', async () => {
+    const failure = run({ homing: 'none', lastRest: rest(45) }).catch((error: unknown) => error);
+    expect(await failure).toMatchObject({
+      code: 'POSITIONER_REFERENCE_LOST',
+      facts: { leftDeg: 45, run: 7 },
+    });
+    const unknown = run({ homing: 'none', lastRest: rest(0, false) }).catch((error: unknown) => error);
+    expect(await unknown).toMatchObject({ code: 'POSITIONER_REFERENCE_LOST' });
+  });
+
+  it('goes on from where the last run left them, and leaves word of its own end', async () => {
+    const { outcome, archive } = await run({ homing: 'none', lastRest: rest(0.05) });
+    expect(outcome.state).toBe('complete');
+    const last = (await archive.events(outcome.run.number)).findLast((event) => event.kind === 'rest');
+    expect(last?.facts).toEqual({ position: { azimuth: 20 }, known: true });
+    expect(await lastRest(archive, 'meadow')).toEqual({
+      run: outcome.run.number,
+      position: { azimuth: 20 },
+      known: true,
+    });
+    expect(await lastRest(archive, 'another range')).toBeUndefined();
+  });
+
+  it('does not ask axes that home themselves', async () => {
+    const { outcome } = await run({ homing: 'switch', lastRest: rest(45) });
+    expect(outcome.state).toBe('complete');
+  });
+
+  it('takes the last sample for the rest of a process that died', async () => {
+    const { outcome, archive } = await run({ homing: 'none' });
+    const events = archive.events.bind(archive);
+    archive.events = async (number) => (await events(number)).filter((event) => event.kind !== 'rest');
+    expect(await lastRest(archive, 'meadow')).toMatchObject({
+      run: outcome.run.number,
+      position: { azimuth: 20 },
+    });
   });
 });
 
