@@ -9,7 +9,15 @@ import { PatternError, positive } from './pattern-error.ts';
 export interface Reflection {
   frequenciesHz: Float64Array;
   s11: Float64Array;
+  /** N rms amplitudes of the complex noise of S11, from `meanNoise`, where it is known. */
+  noise?: Float64Array;
 }
+
+/**
+ * Differences within this many standard deviations of the noise are none: among 1601 values of pure noise
+ * one lies beyond it in fewer than one band of a hundred thousand.
+ */
+const noiseDeviations = 6;
 
 export interface BestMatch {
   /** Where |S11| is least, in Hz. */
@@ -25,7 +33,8 @@ export interface BestMatch {
  * perfect match, decibels are not).
  *
  * @param reflection S11 over the band
- * @returns frequency in Hz, an upper or lower bound when the least sample is the band's first or last; the
+ * @returns frequency in Hz, an upper or lower bound when the least sample is the band's first or last,
+ *   absent when no |S11| differs from the band's mean by more than six standard deviations of its noise; the
  *   return loss of that sample
  * @throws PatternError for frequencies out of order, or numbers that are not finite
  * Source: common practice, no source. Checked: tests/outside (NEC dipole band), tests/unit/daemon/pattern.
@@ -35,7 +44,11 @@ export function bestMatch(reflection: Reflection): BestMatch {
   const { frequenciesHz } = reflection;
   const last = powers.length - 1;
   const best = powers.reduce((least, power, k) => (power < powers[least]! ? k : least), 0);
-  const loss = returnLossDb(Math.sqrt(powers[best]!));
+  const loss = returnLossDb(Math.sqrt(powers[best]!), reflection.noise?.[best]);
+  if (sameWithinNoise(powers.map(Math.sqrt), reflection.noise)) {
+    const because = 'the antenna matches alike over the whole band: what differences there are is noise';
+    return { frequencyHz: absentFigure(because), returnLossDb: loss };
+  }
   const sampledHz = frequenciesHz[best]!;
   if (best === 0 || best === last) {
     const note = `|S11| still falls at the ${best === 0 ? 'lower' : 'upper'} end of the band`;
@@ -59,7 +72,8 @@ export function bestMatch(reflection: Reflection): BestMatch {
  *
  * @param reflection S11 over the band
  * @param referenceOhm Z0, 50 Ω unless given
- * @returns frequency in Hz; absent when X keeps its sign over the band (it says which)
+ * @returns frequency in Hz; absent when X keeps its sign over the band (it says which), and when S11 does not
+ *   show both signs by more than six standard deviations of its noise
  * @throws PatternError for frequencies out of order, or numbers that are not finite
  * Source: common practice, no source. Checked: tests/outside (NEC dipole band).
  */
@@ -81,11 +95,13 @@ export function resonance(reflection: Reflection, referenceOhm = usualImpedanceO
     }
     before = here;
   }
-  if (found !== undefined) return valueFigure(found);
+  const shown = signsShown(reflection);
+  if (!shown.inductive && !shown.capacitive) {
+    return absentFigure('no resonance to be seen: what reactance there is over the band is noise');
+  }
+  if (found !== undefined) return shown.inductive && shown.capacitive ? valueFigure(found) : keeps(shown);
   if (!before) return absentFigure('no resonance in the band: an open circuit at its end');
-  return absentFigure(
-    `no resonance in the band: the antenna stays ${before.ohm > 0 ? 'inductive (too long)' : 'capacitive (too short)'}`,
-  );
+  return keeps({ inductive: before.ohm > 0 });
 }
 
 export interface MatchedBand {
@@ -136,9 +152,9 @@ export function lengthScale(resonanceHz: number, markerHz: number): number {
   return positive('resonanceHz', resonanceHz) / positive('markerHz', markerHz);
 }
 
-function reflectedPowers({ frequenciesHz, s11 }: Reflection): number[] {
+function reflectedPowers({ frequenciesHz, s11, noise }: Reflection): number[] {
   const count = frequenciesHz.length;
-  if (count < 1 || s11.length !== 2 * count) {
+  if (count < 1 || s11.length !== 2 * count || (noise && noise.length !== count)) {
     throw new PatternError('Hand in one complex S11 for each frequency.', { count, numbers: s11.length });
   }
   return Array.from(frequenciesHz, (frequencyHz, k) => {
@@ -175,4 +191,32 @@ function edge(
   }
   const endHz = frequenciesHz[step > 0 ? sizes.length - 1 : 0]!;
   return boundFigure(step > 0 ? 'lower' : 'upper', endHz, 'the band ends before the limit is passed');
+}
+
+function keeps({ inductive }: { inductive: boolean }): Figure {
+  const kind = inductive ? 'inductive (too long)' : 'capacitive (too short)';
+  return absentFigure(`no resonance in the band: the antenna stays ${kind}`);
+}
+
+/** The imaginary part of S11 has the sign of X: which signs stand out of the noise. Without noise, both. */
+function signsShown({ s11, noise }: Reflection): { inductive: boolean; capacitive: boolean } {
+  if (!noise) return { inductive: true, capacitive: true };
+  const shown = { inductive: false, capacitive: false };
+  for (let k = 0; k < noise.length; k += 1) {
+    const limit = noiseDeviations * deviation(noise[k]!);
+    if (s11[2 * k + 1]! > limit) shown.inductive = true;
+    if (s11[2 * k + 1]! < -limit) shown.capacitive = true;
+  }
+  return shown;
+}
+
+function sameWithinNoise(sizes: readonly number[], noise: Float64Array | undefined): boolean {
+  if (!noise) return false;
+  const mean = sizes.reduce((sum, size) => sum + size, 0) / sizes.length;
+  return sizes.every((size, k) => Math.abs(size - mean) <= noiseDeviations * deviation(noise[k]!));
+}
+
+/** Standard deviation of one part of a complex noise of that rms amplitude, and of a magnitude well above it. */
+function deviation(noise: number): number {
+  return noise / Math.SQRT2;
 }

@@ -3,6 +3,7 @@
 // Symbols: Γ reflection coefficient (S11 at the calibrated plane), Z0 reference impedance, Z = R + jX.
 import { amplitudeDb, amplitudeRatio, powerDb } from './decibels.ts';
 import { absentFigure, boundFigure, type Figure, type FigureAbsent, valueFigure } from './figure.ts';
+import { boundMarginDb } from './floor.ts';
 import { finite, PatternError, positive } from './pattern-error.ts';
 
 /** Reference impedance of common coaxial systems. */
@@ -14,15 +15,24 @@ const leastGamma = 1e-6;
 /** Why figures of match are absent at |Γ| ≥ 1. */
 const tooMuchReflected = 'all of the power comes back, or more: check the calibration and the port';
 
+/** What is said of a reflection that noise alone would show. */
+const drownedNote = `the reflection is within ${boundMarginDb} dB of the noise of its measurement`;
+
 /**
  * Return loss of a reflection coefficient.
  *
+ * A |Γ| within 3 dB of its noise says only that it is no larger than that mark, wherever it came to lie.
+ *
  * @param gammaMagnitude |Γ|, 0 or more
- * @returns −20 log|Γ| in dB, positive for a passive load; a lower bound of 120 dB below 1e-6
- * @throws PatternError for a negative or non-finite magnitude
+ * @param noise rms amplitude of the noise of Γ, from `meanNoise`, where it is known
+ * @returns −20 log|Γ| in dB, positive for a passive load; a lower bound, 3 dB above the noise, for a |Γ|
+ *   below that mark; a lower bound of 120 dB below 1e-6
+ * @throws PatternError for a negative or non-finite magnitude or noise
  * Source: transmission-line theory; IEEE Std 100 (return loss). Checked: tests/outside (C-MATCH, C-VSWR).
  */
-export function returnLossDb(gammaMagnitude: number): Figure {
+export function returnLossDb(gammaMagnitude: number, noise?: number): Figure {
+  const mark = drowningMark(gammaMagnitude, noise);
+  if (mark !== undefined) return boundFigure('lower', 0 - amplitudeDb(mark), drownedNote);
   if (magnitude(gammaMagnitude) < leastGamma) return boundFigure('lower', 0 - amplitudeDb(leastGamma));
   return valueFigure(0 - amplitudeDb(gammaMagnitude));
 }
@@ -42,13 +52,18 @@ export function gammaOfReturnLoss(lossDb: number): number {
  * Voltage standing wave ratio of a reflection coefficient.
  *
  * @param gammaMagnitude |Γ|, 0 or more
- * @returns (1 + |Γ|)/(1 − |Γ|), 1 or more; absent at |Γ| of 1 or more
- * @throws PatternError for a negative or non-finite magnitude
+ * @param noise rms amplitude of the noise of Γ, from `meanNoise`, where it is known
+ * @returns (1 + |Γ|)/(1 − |Γ|), 1 or more; an upper bound where |Γ| is within 3 dB of the noise, as the
+ *   return loss is a lower one; absent at |Γ| of 1 or more
+ * @throws PatternError for a negative or non-finite magnitude or noise
  * Source: transmission-line theory. Checked: tests/outside (C-MATCH, C-VSWR).
  */
-export function vswr(gammaMagnitude: number): Figure {
-  if (magnitude(gammaMagnitude) >= 1) return absentFigure(tooMuchReflected);
-  return valueFigure((1 + gammaMagnitude) / (1 - gammaMagnitude));
+export function vswr(gammaMagnitude: number, noise?: number): Figure {
+  const mark = drowningMark(gammaMagnitude, noise);
+  const size = mark ?? gammaMagnitude;
+  if (magnitude(size) >= 1) return absentFigure(tooMuchReflected);
+  const ratio = (1 + size) / (1 - size);
+  return mark === undefined ? valueFigure(ratio) : boundFigure('upper', ratio, drownedNote);
 }
 
 /**
@@ -114,4 +129,10 @@ export function impedance(
 function magnitude(gammaMagnitude: number): number {
   if (finite('gammaMagnitude', gammaMagnitude) >= 0) return gammaMagnitude;
   throw new PatternError(`|Γ| is ${gammaMagnitude}; a magnitude is 0 or more.`, { gammaMagnitude });
+}
+
+/** The |Γ| 3 dB above the noise, where the measured one is no larger; undefined where it is, or without noise. */
+function drowningMark(gammaMagnitude: number, noise: number | undefined): number | undefined {
+  const mark = noise === undefined ? 0 : magnitude(noise) * amplitudeRatio(boundMarginDb);
+  return magnitude(gammaMagnitude) <= mark && mark >= leastGamma ? mark : undefined;
 }

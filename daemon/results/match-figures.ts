@@ -7,18 +7,26 @@ import { entryOf } from './figure-entry.ts';
 import type { FiguresDocument } from './figures-document.ts';
 import { magnitudes } from './mean-trace.ts';
 
-/** `reflection`: complex S11 (or S22) at N frequencies, interleaved. */
+/**
+ * `reflection`: complex S11 (or S22) at N frequencies, interleaved; `noise`: rms amplitude of its noise at
+ * each of them, where it is known.
+ */
 export function matchFigures(
   frequenciesHz: readonly number[],
   reflection: Float64Array,
   markerHz: number | undefined,
+  noise?: Float64Array,
 ): NonNullable<FiguresDocument['match']> {
   const sizes = Array.from(magnitudes(reflection));
-  const band = { frequenciesHz: Float64Array.from(frequenciesHz), s11: reflection };
+  const band = {
+    frequenciesHz: Float64Array.from(frequenciesHz),
+    s11: reflection,
+    ...(noise ? { noise } : {}),
+  };
   const resonanceHz = resonance(band);
   return {
-    vswr: sizes.map((size) => entryOf(vswr(size))),
-    returnLossDb: sizes.map((size) => entryOf(returnLossDb(size))),
+    vswr: sizes.map((size, k) => entryOf(vswr(size, noise?.[k]))),
+    returnLossDb: sizes.map((size, k) => entryOf(returnLossDb(size, noise?.[k]))),
     resonanceHz: entryOf(resonanceHz),
     bestMatchHz: entryOf(bestMatch(band).frequencyHz),
     ...(markerHz === undefined ? {} : { markerHz }),

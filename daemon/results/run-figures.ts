@@ -1,10 +1,11 @@
 // One run of the archive → the document `figures/1`. Reads, collects and names; mathematics is in pattern/.
-import type { Archive, RunRecord, SampleRecord, SetupRecord } from '../archive/archive.ts';
+import type { Archive, RunRecord, SampleRecord } from '../archive/archive.ts';
 import type { Plan, PlanCut } from '../files/plan-file.ts';
 import type { RangeFile } from '../files/range-file.ts';
 import { absentFigure, type Figure } from '../pattern/figure.ts';
 import { cutFigures } from '../pattern/figures.ts';
 import { gainConstantDb, ieeeGainDbi } from '../pattern/gain-transfer.ts';
+import { meanNoise } from '../pattern/mean-noise.ts';
 import { tieNoiseDb } from '../pattern/tie-noise.ts';
 import { type CutLevels, cutLevels } from './cut-levels.ts';
 import { entryOf } from './figure-entry.ts';
@@ -43,7 +44,7 @@ export async function runFigures(
     ...head(run, plan, frequenciesHz),
     cuts,
     runFigures: {},
-    ...matchPart(setups, frequenciesHz, reflection, plan.markersHz),
+    ...matchPart(run, samples, frequenciesHz, reflection),
     flags,
   };
 }
@@ -77,10 +78,14 @@ function head(run: RunRecord, plan: Plan, frequenciesHz: number[]): DocumentHead
   };
 }
 
-/** Mean reflection of the AUT over all boresight visits; the port is the range file's. */
+/** Mean reflection of the AUT over all boresight visits. */
 function autReflection(run: RunRecord, samples: readonly SampleRecord[]): Float64Array | undefined {
-  const { autPort } = (run.rangeFile as RangeFile).analyzer;
-  return meanTrace(samples, autPort === 1 ? 'S11' : 'S22');
+  return meanTrace(samples, reflectionOf(run));
+}
+
+/** The port of the AUT is the range file's. */
+function reflectionOf(run: RunRecord): 'S11' | 'S22' {
+  return (run.rangeFile as RangeFile).analyzer.autPort === 1 ? 'S11' : 'S22';
 }
 
 /** What repeated sweeps at boresight show of the floor; leakage is not in it. */
@@ -96,13 +101,15 @@ function sweepNoiseDb(
 }
 
 function matchPart(
-  setups: readonly SetupRecord[],
+  run: RunRecord,
+  samples: readonly SampleRecord[],
   frequenciesHz: number[],
   reflection: Float64Array | undefined,
-  markersHz: readonly number[],
 ): Pick<FiguresDocument, 'match'> {
-  if (setups.length === 0 || !reflection) return {};
-  return { match: matchFigures(frequenciesHz, reflection, markersHz[0]) };
+  if (frequenciesHz.length === 0 || !reflection) return {};
+  const visits = samples.flatMap((sample) => sample.traces.get(reflectionOf(run)) ?? []);
+  const markerHz = (run.plan as Plan).markersHz[0];
+  return { match: matchFigures(frequenciesHz, reflection, markerHz, meanNoise(frequenciesHz, visits)) };
 }
 
 function figuresOfCut(

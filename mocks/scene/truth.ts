@@ -18,8 +18,8 @@ export interface FrequencyTruth {
 }
 
 export interface MatchTruth {
-  /** Where |S11| is least within the band. */
-  bestMatchHz: number;
+  /** Where |S11| is least within the band; undefined when it is the same everywhere. */
+  bestMatchHz: number | undefined;
   /** Where the reactance crosses zero going up; absent when it does not within the band. */
   resonanceHz: number | undefined;
 }
@@ -85,17 +85,18 @@ export function matchTruth(
   const steps = Math.ceil((stopHz - startHz) / 10_000);
   const frequencyOf = (i: number): number => startHz + ((stopHz - startHz) * i) / steps;
   let best = 0;
+  let worst = 0;
   let rising: number | undefined;
   for (let i = 1; i <= steps; i++) {
     if (power(frequencyOf(i)) < power(frequencyOf(best))) best = i;
+    if (power(frequencyOf(i)) > power(frequencyOf(worst))) worst = i;
     if (rising === undefined && reactive(frequencyOf(i - 1)) < 0 && reactive(frequencyOf(i)) >= 0) rising = i;
   }
   return {
-    bestMatchHz: leastBetween(
-      power,
-      frequencyOf(Math.max(0, best - 1)),
-      frequencyOf(Math.min(steps, best + 1)),
-    ),
+    bestMatchHz:
+      best === worst
+        ? undefined
+        : leastBetween(power, frequencyOf(Math.max(0, best - 1)), frequencyOf(Math.min(steps, best + 1))),
     resonanceHz:
       rising === undefined ? undefined : zeroBetween(reactive, frequencyOf(rising - 1), frequencyOf(rising)),
   };

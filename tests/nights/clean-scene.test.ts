@@ -71,7 +71,7 @@ describe.each(cases)('a clean scene, seed %i, turned by %f° in its mount', (see
       expect(numberOf(document.match?.vswr[index])).toBeCloseTo(at.vswr, 2);
     }
     const { bestMatchHz, resonanceHz } = truth.match;
-    expect(Math.abs(numberOf(document.match?.bestMatchHz) - bestMatchHz)).toBeLessThan(frequencyStepHz);
+    expect(Math.abs(numberOf(document.match?.bestMatchHz) - bestMatchHz!)).toBeLessThan(frequencyStepHz);
     expect(Math.abs(numberOf(document.match?.resonanceHz) - resonanceHz!)).toBeLessThan(frequencyStepHz);
   });
 });

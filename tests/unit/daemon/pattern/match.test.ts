@@ -53,6 +53,24 @@ describe('match at one frequency', () => {
     expect(vswr(0)).toEqual({ kind: 'value', value: 1 });
   });
 
+  it('bounds what is within 3 dB of the noise by that mark', () => {
+    // Noise 80 dB down, the mark 77 dB down: |Γ| = 10^(−77/20) = 1.41254e-4, VSWR (1 + |Γ|)/(1 − |Γ|).
+    for (const gamma of [0, 1e-5, 1.4e-4]) {
+      const loss = returnLossDb(gamma, 1e-4);
+      expect(loss).toMatchObject({ kind: 'bound', bound: 'lower', note: expect.stringContaining('noise') });
+      if (loss.kind === 'bound') expect(loss.value).toBeCloseTo(77, 9);
+      const ratio = vswr(gamma, 1e-4);
+      expect(ratio).toMatchObject({ kind: 'bound', bound: 'upper', note: expect.stringContaining('noise') });
+      if (ratio.kind === 'bound') expect(ratio.value).toBeCloseTo(1.000282548, 8);
+    }
+    expect(returnLossDb(1.42e-4, 1e-4).kind).toBe('value');
+    expect(vswr(1.42e-4, 1e-4).kind).toBe('value');
+    // No noise to speak of: 120 dB remain the limit.
+    expect(returnLossDb(0, 1e-9)).toEqual({ kind: 'bound', bound: 'lower', value: 120 });
+    expect(vswr(0.9, 0.9)).toMatchObject({ kind: 'absent' });
+    expect(() => returnLossDb(0.1, -1)).toThrow(PatternError);
+  });
+
   it('refuses magnitudes that are none', () => {
     for (const figure of [returnLossDb, vswr, mismatchLossDb]) {
       expect(() => figure(-0.1)).toThrow(PatternError);

@@ -182,6 +182,43 @@ describe('the figures of a stored run', () => {
     expect(match?.bestMatchHz).toMatchObject({ value: expect.closeTo(868e6, -3) });
   });
 
+  it('know no match from noise: a well-matched antenna at eight ties', async () => {
+    // |S11| of 1e-4 in a direction of its own at each of 8 ties and 3 frequencies: 80 dB down, the mean 89 dB.
+    const traceOf = (tie: number): Float64Array =>
+      Float64Array.from({ length: 6 }, (_, i) => {
+        const turn = 2.4 * (3 * tie + (i >> 1)) ** 1.7;
+        return 1e-4 * (i % 2 === 0 ? Math.cos(turn) : Math.sin(turn));
+      });
+    const number = await record({
+      samples: (all) => {
+        const tie = all[0]!;
+        const ties = Array.from({ length: 8 }, (_, k) => ({
+          ...tie,
+          traces: new Map([...tie.traces, ['S11' as const, traceOf(k)]]),
+        }));
+        return [...ties, ...all.slice(1, -1)].map((sample, index) => ({
+          ...sample,
+          sequence: index + 1,
+          startMonotonicMs: 1000 * index,
+          stopMonotonicMs: 1000 * index + 10,
+        }));
+      },
+    });
+    const { match } = await runFigures(archive!, number);
+    expect(match?.bestMatchHz).toMatchObject({ absent: expect.stringContaining('alike') });
+    expect(match?.resonanceHz).toMatchObject({ absent: expect.stringContaining('noise') });
+    expect(match?.lengthScale).toEqual({ absent: 'no resonance was found in the band' });
+    for (const entry of match?.returnLossDb ?? []) {
+      if ('absent' in entry) throw new Error(entry.absent);
+      expect(entry.value).toBeGreaterThan(80);
+      if (entry.bound)
+        expect(entry).toMatchObject({ bound: 'lower', note: expect.stringContaining('noise') });
+    }
+    const bounds = (entries: object[] | undefined) => entries?.map((entry) => 'bound' in entry);
+    expect(bounds(match?.returnLossDb)).toContain(true);
+    expect(bounds(match?.vswr)).toEqual(bounds(match?.returnLossDb));
+  });
+
   it('flag a closure beyond the limit, and a calibration that is off', async () => {
     const number = await record({ closureDb: 0.4, correctionOn: false });
     const document = await runFigures(archive!, number);

@@ -139,7 +139,7 @@ describe('over the band', () => {
   // 50 Ω-near only lower down, so |Γ| is least near 849.5 MHz (5 MHz sweep of the same program).
   it('best match and resonance are two frequencies', () => {
     const match = matchTruth(new Scene({ antennas: { aut: { kind: 'dipole' } } }), 820e6, 920e6);
-    expect(Math.abs(match.bestMatchHz - 849.5e6)).toBeLessThan(0.2e6);
+    expect(Math.abs(match.bestMatchHz! - 849.5e6)).toBeLessThan(0.2e6);
     expect(Math.abs(match.resonanceHz! - 856.5e6)).toBeLessThan(0.2e6);
   });
 
@@ -149,9 +149,17 @@ describe('over the band', () => {
     expect(Math.abs(match.resonanceHz! * 1.01 - 856.5e6)).toBeLessThan(0.2e6);
   });
 
-  it('tells when there is no resonance in the band', () => {
-    const scene = new Scene({ antennas: { aut: { kind: 'isotropic' } } });
-    expect(matchTruth(scene, 820e6, 920e6).resonanceHz).toBeUndefined();
+  it('tells when there is no resonance in the band, and no best match', () => {
+    for (const magnitude of [0, 0.3]) {
+      const reflection = { magnitude, phaseDeg: 40 };
+      const scene = new Scene({ antennas: { aut: { kind: 'isotropic', reflection } } });
+      expect(matchTruth(scene, 820e6, 920e6)).toEqual({ bestMatchHz: undefined, resonanceHz: undefined });
+    }
+  });
+
+  it('has its best match at an end of a band that lies beside the resonance', () => {
+    const scene = new Scene({ antennas: { aut: { kind: 'dipole' } } });
+    expect(matchTruth(scene, 870e6, 920e6).bestMatchHz).toBeCloseTo(870e6, -2);
   });
 });
 
