@@ -19,11 +19,23 @@ const pollGrowth = 1.5;
 const longestPollMs = 100;
 const longestPollShare = 1 / 20;
 const deadlineFactor = 1.5;
+/** Retrace, band switching and settling are often left out of the stated sweep time. */
+const statedSlackMs = 500;
+/** An estimate knows nothing of how the instrument sweeps. */
+const estimatedSlackMs = 15_000;
+/** An end before this share of the stated time is doubted. */
+const earlyShare = 0.5;
 
 export interface SweepRun {
   startMonotonicMs: number;
   stopMonotonicMs: number;
   timeLaw: TimeLaw;
+  /** When the time of the last start should have been over, where its end came doubtfully early. */
+  statedEndMs: number | undefined;
+}
+
+function slackMsOf(sweep: InstrumentSweep): number {
+  return sweep.isStated ? statedSlackMs : estimatedSlackMs;
 }
 
 /** Sweeps, and returns when. Throws ANALYZER_SWEEP_TIMEOUT, ANALYZER_DEVICE_ERROR, ANALYZER_POWER_CYCLED … */
@@ -43,7 +55,45 @@ export async function runSweeps(
   }
   const stopMonotonicMs = talk.clock.monotonicMs();
   const startMonotonicMs = startedMs[0] ?? stopMonotonicMs;
-  return { startMonotonicMs, stopMonotonicMs, timeLaw: timeLawOf(sweep, startedMs, stopMonotonicMs) };
+  const timeLaw = timeLawOf(sweep, startedMs, stopMonotonicMs);
+  return {
+    startMonotonicMs,
+    stopMonotonicMs,
+    timeLaw,
+    statedEndMs: doubtfulEnd(sweep, startedMs, stopMonotonicMs),
+  };
+}
+
+function doubtfulEnd(
+  sweep: InstrumentSweep,
+  startedMs: readonly number[],
+  stopMs: number,
+): number | undefined {
+  const lastStartMs = startedMs.at(-1) ?? stopMs;
+  const statedMs = sweep.passMs * sweep.passesPerStart;
+  return stopMs - lastStartMs < statedMs * earlyShare ? lastStartMs + statedMs : undefined;
+}
+
+/**
+ * Some instruments call an operation complete that has only begun, and what is read then is the sweep before.
+ * Once the stated time is over the trace must still be the same. Throws ANALYZER_DEVICE_ERROR.
+ */
+export async function confirmEnd(
+  talk: ScpiConversation,
+  sweep: InstrumentSweep,
+  traces: Acquisition['traces'],
+  statedEndMs: number,
+): Promise<void> {
+  const [parameter] = traces.keys();
+  if (parameter === undefined) return;
+  await talk.sleep(statedEndMs + slackMsOf(sweep) - talk.clock.monotonicMs());
+  const later = (await readTraces(talk, sweep, [parameter])).get(parameter);
+  if (later?.every((value, index) => Object.is(value, traces.get(parameter)?.[index]))) return;
+  throw new DriverError(
+    'ANALYZER_DEVICE_ERROR',
+    'the instrument called a sweep complete and went on changing its trace: the end of a sweep cannot be told',
+    { parameter, statedMs: sweep.passMs * sweep.passesPerStart },
+  );
 }
 
 /**
@@ -58,7 +108,7 @@ async function awaitEnd(
   answerTimeoutMs: number,
 ): Promise<void> {
   const begunMs = startedMs.at(-1) ?? talk.clock.monotonicMs();
-  const deadlineMs = begunMs + sweep.acquisitionMs * deadlineFactor + sweep.slackMs;
+  const deadlineMs = begunMs + sweep.acquisitionMs * deadlineFactor + slackMsOf(sweep);
   const pause = pollPauses(talk, begunMs + sweep.passMs * sweep.passesPerStart);
   for (;;) {
     await talk.sleep(pause());

@@ -13,7 +13,7 @@ import type {
   SParameter,
   SweepSetup,
 } from './analyzer.ts';
-import { confirmUnchanged, readTraces, runSweeps } from './scpi-acquisition.ts';
+import { confirmEnd, confirmUnchanged, readTraces, runSweeps, type SweepRun } from './scpi-acquisition.ts';
 import type { ScpiConversation, TraceForm } from './scpi-conversation.ts';
 import { problemsOf, type ScpiDialect } from './scpi-dialects.ts';
 import { ScpiOperations } from './scpi-operations.ts';
@@ -45,6 +45,8 @@ export class ScpiAnalyzer implements Analyzer {
   #sweep: InstrumentSweep | undefined;
   /** Correction as it was at the last `prepare`; a power cycle may lose it in silence. */
   #correctionOn: boolean | undefined;
+  /** The sweep whose early end was found to be one. */
+  #endProven: InstrumentSweep | undefined;
   #switchingOff: Promise<void> | undefined;
 
   /** Opens nothing. Throws ANALYZER_BAD_DIALECT. */
@@ -160,8 +162,12 @@ export class ScpiAnalyzer implements Analyzer {
     const setup = this.#setup;
     const sweep = this.#operations.doubtful || !this.#sweep ? await this.#applySetup(talk) : this.#sweep;
     if (!setup) throw new Error('defect: nothing is prepared');
-    const run = await this.#runSweeps(talk, stop, sweep);
+    const { statedEndMs, ...run } = await this.#runSweeps(talk, stop, sweep);
     const traces = await readTraces(talk, sweep, wanted);
+    if (statedEndMs !== undefined && sweep !== this.#endProven) {
+      await confirmEnd(talk, sweep, traces, statedEndMs);
+      this.#endProven = sweep;
+    }
     await confirmUnchanged(talk, setup, sweep);
     for (const [parameter, trace] of traces) {
       requirePlausible(parameter, trace, this.#previous.get(parameter));
@@ -170,11 +176,7 @@ export class ScpiAnalyzer implements Analyzer {
     return { ...run, traces };
   }
 
-  async #runSweeps(
-    talk: ScpiConversation,
-    stop: AbortSignal,
-    sweep: InstrumentSweep,
-  ): Promise<Omit<Acquisition, 'traces'>> {
+  async #runSweeps(talk: ScpiConversation, stop: AbortSignal, sweep: InstrumentSweep): Promise<SweepRun> {
     try {
       return await runSweeps(talk, sweep, this.#answerTimeoutMs);
     } catch (error) {

@@ -21,16 +21,11 @@ export interface InstrumentSweep extends PreparedSweep {
   /** Starts that make one acquisition, and passes that each of them runs. */
   starts: number;
   passesPerStart: number;
-  /** How much longer than by these times a start may take before it is given up. */
-  slackMs: number;
+  /** These times are the instrument's own, not an estimate of ours. */
+  isStated: boolean;
 }
 
-type Course = Pick<InstrumentSweep, 'passMs' | 'starts' | 'passesPerStart' | 'slackMs' | 'acquisitionMs'>;
-
-/** Retrace, band switching and settling are often left out of the stated sweep time. */
-const statedSlackMs = 500;
-/** An estimate knows nothing of how the instrument sweeps. */
-const estimatedSlackMs = 15_000;
+type Course = Pick<InstrumentSweep, 'passMs' | 'starts' | 'passesPerStart' | 'isStated' | 'acquisitionMs'>;
 
 /**
  * Sends the whole setup and proves it. Throws ANALYZER_COMMAND_REFUSED, ANALYZER_SETTING_DIFFERS (facts:
@@ -127,7 +122,7 @@ async function applyAveraging(talk: ScpiConversation, setup: SweepSetup): Promis
   const statedMs = await askSweepMs(talk);
   const sweepMs = statedMs ?? estimatedSweepMs(setup);
   const acquisitionMs = sweepMs * averages;
-  const all = { acquisitionMs, slackMs: statedMs === undefined ? estimatedSlackMs : statedSlackMs };
+  const all = { acquisitionMs, isStated: statedMs !== undefined };
   if (averages === 1) return { ...all, passMs: sweepMs, starts: 1, passesPerStart: 1 };
   // Without proof that it averages by point it is taken to need N starts, which only cost time if it does.
   const byPoint =

@@ -25,6 +25,10 @@ export interface InstrumentQuirks {
   completeSticks: 'no' | 'until-cleared' | 'for-ever';
   /** Knows `*OPC`. */
   operationComplete: boolean;
+  /** Calls an operation complete that has only begun. */
+  completeAtOnce: boolean;
+  /** What it states in place of the time that a sweep takes. */
+  statedSweepMs: number | undefined;
   averaging: 'by-point' | 'start-each' | 'start-all';
   /** What it has; undefined: any. */
   bandwidths: readonly number[] | undefined;
@@ -74,6 +78,8 @@ export const plainInstrument: InstrumentQuirks = {
   staleOperationComplete: false,
   completeSticks: 'no',
   operationComplete: true,
+  completeAtOnce: false,
+  statedSweepMs: undefined,
   averaging: 'by-point',
   bandwidths: undefined,
   frequencyDigits: 'fifteen',

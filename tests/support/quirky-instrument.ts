@@ -243,7 +243,7 @@ export class QuirkyInstrument {
       this.#errors = [];
       this.#endWanted = false;
     } else if (name === '*OPC' && !asks && this.quirks.operationComplete) {
-      if (this.#running) this.#endWanted = true;
+      if (this.#running && !this.quirks.completeAtOnce) this.#endWanted = true;
       else this.#events |= 1;
     } else return this.#refuse(-113, `Undefined header;${name}`, 32);
     return undefined;
@@ -360,7 +360,7 @@ export class QuirkyInstrument {
   }
 
   #sweepTime(): string | undefined {
-    const seconds = this.quirks.sweepMs / 1000;
+    const seconds = (this.quirks.statedSweepMs ?? this.quirks.sweepMs) / 1000;
     const { sweepTime } = this.quirks;
     if (sweepTime === 'zero') return '0';
     if (sweepTime === 'nan') return 'nan';

@@ -36,6 +36,7 @@ const harmless: Record<string, AnalyzerJob> = {
   'operation complete that only *CLS takes away': {
     quirks: { staleOperationComplete: true, completeSticks: 'until-cleared', oldDataReadable: true },
   },
+  'sweep time overstated': { quirks: { statedSweepMs: 5_000 } },
   'average by N starts': { quirks: { averaging: 'start-each' }, setup: { averages: 4 } },
   'average by one start': { quirks: { averaging: 'start-all' }, setup: { averages: 4 } },
   'average by point': { quirks: { averaging: 'by-point' }, setup: { averages: 4 } },
@@ -89,6 +90,14 @@ const hopeless: Record<string, { job: AnalyzerJob; codes: DriverErrorCode[]; acq
   'operation complete for ever': {
     job: { quirks: { staleOperationComplete: true, completeSticks: 'for-ever', oldDataReadable: true } },
     codes: ['ANALYZER_DEVICE_ERROR'],
+    acquired: 0,
+  },
+  'complete as soon as begun': {
+    job: {
+      quirks: { completeAtOnce: true, oldDataReadable: true },
+      troubles: ['none', 'none', 'none', 'none'],
+    },
+    codes: ['ANALYZER_DEVICE_ERROR', 'ANALYZER_IMPLAUSIBLE_DATA'],
     acquired: 0,
   },
   silence: { job: { quirks: { silent: true } }, codes: ['ANALYZER_NOT_ANSWERING'], acquired: 0 },
@@ -184,6 +193,15 @@ const setups = {
   byteOrder: fc.constantFrom('normal', 'swapped'),
 } as const;
 
+/** A sweep that is called complete at once is found out by its time, if that is known and answers are quick. */
+const tellingTime: Partial<InstrumentQuirks> = {
+  sweepMs: 150,
+  sweepTime: 'stated',
+  statedSweepMs: undefined,
+  unknown: [],
+  answerDelayMs: () => 0,
+};
+
 describe('any mixture of habits', () => {
   it('costs nothing as long as each of them costs nothing', async () => {
     const jobs: fc.Arbitrary<AnalyzerJob> = fc.record({ quirks, ...setups });
@@ -202,6 +220,8 @@ describe('any mixture of habits', () => {
     const rough: fc.Arbitrary<Partial<InstrumentQuirks>> = fc.record(
       {
         bandwidths: fc.constantFrom([1000], [300, 3000]),
+        completeAtOnce: fc.boolean(),
+        statedSweepMs: fc.constantFrom(10, 150, 6_000),
         completeSticks: fc.constantFrom('no', 'until-cleared', 'for-ever'),
         operationComplete: fc.constantFrom(true, true, true, false),
         blockTail: fc.constantFrom('\n', '\n\n', 'xyz\n', '12\n'),
@@ -221,7 +241,7 @@ describe('any mixture of habits', () => {
       { requiredKeys: [] },
     );
     const jobs: fc.Arbitrary<AnalyzerJob> = fc.record({
-      quirks: fc.tuple(quirks, rough).map(([a, b]) => ({ ...a, ...b })),
+      quirks: fc.tuple(quirks, rough).map(([a, b]) => ({ ...a, ...b, ...(b.completeAtOnce && tellingTime) })),
       ...setups,
       troubles: fc.array(
         fc.constantFrom('none', 'drop-link', 'cut-power', 'touch-points', 'touch-continuous', 'touch-select'),
