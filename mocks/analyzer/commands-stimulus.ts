@@ -15,12 +15,13 @@ import {
 } from './settings.ts';
 import { plain } from './trace-format.ts';
 
-export function stimulusCommands(state: InstrumentState): Command[] {
+/** `isInitiated`: sweeps are started by INITiate; else the command tree has another way. */
+export function stimulusCommands(state: InstrumentState, isInitiated: boolean): Command[] {
   return [
     ...frequencyCommands(state),
     ...sweepCommands(state),
     ...sourceCommands(state),
-    ...triggerCommands(state),
+    ...triggerCommands(state, isInitiated),
   ];
 }
 
@@ -209,7 +210,7 @@ function sourceCommands(state: InstrumentState): Command[] {
   ];
 }
 
-function triggerCommands(state: InstrumentState): Command[] {
+function triggerCommands(state: InstrumentState, isInitiated: boolean): Command[] {
   const sources = ['IMMediate', 'INTernal', 'BUS', 'MANual', 'EXTernal'];
   const continuous = (pattern: string): Command =>
     booleanCommand(
@@ -217,10 +218,13 @@ function triggerCommands(state: InstrumentState): Command[] {
       () => state.settings.continuous,
       (on) => state.change({ continuous: on }),
     );
-  return [
+  const initiation = [
     { pattern: 'INITiate#[:IMMediate]', set: () => state.initiate() },
     continuous('INITiate#:CONTinuous'),
     continuous('INITiate#:CONTinuous:ALL'),
+  ];
+  return [
+    ...(isInitiated ? initiation : []),
     { pattern: 'ABORt', set: () => state.runner.abort() },
     wordCommand(
       'TRIGger[:SEQuence]:SOURce',

@@ -1,102 +1,92 @@
-// Commands that say which S-parameters are recorded and hand out their data: numbered traces, of which one
-// is active and read from.
+// What all command trees have in common about traces: their data as numbers, and the commands for the form in
+// which numbers are sent. How traces are defined and chosen is in command-trees/.
 import type { Answer, Command } from './command-tree.ts';
-import { numberCommand } from './commands-stimulus.ts';
 import { Refusal } from './error-queue.ts';
 import type { InstrumentState } from './instrument-state.ts';
 import type { SParameterName } from './measurement.ts';
 import { integerOf, isWord, wordOf } from './parameter-values.ts';
-import { limits, type Trace, type TraceFormat } from './settings.ts';
+import type { Settings, Trace, TraceFormat } from './settings.ts';
 import { formatNumbers } from './trace-format.ts';
 
 const parameterNames: readonly SParameterName[] = ['S11', 'S21', 'S12', 'S22'];
 const formatWords = ['MLOGarithmic', 'MLINear', 'PHASe', 'SWR', 'REAL', 'IMAGinary', 'POLar', 'SMITh'];
 
-export function traceCommands(state: InstrumentState): Command[] {
-  return [...definitionCommands(state), ...dataCommands(state), ...formatCommands(state)];
+/** The S-parameter that a word means. Throws −224. */
+export function sParameterOf(word: string): SParameterName {
+  const parameter = parameterNames.find((name) => isWord(word, name));
+  if (!parameter) throw new Refusal(-224);
+  return parameter;
 }
 
-function definitionCommands(state: InstrumentState): Command[] {
-  const indexOf = (suffixes: readonly number[]): number => {
-    const number = suffixes[1]!;
-    if (number < 1 || number > state.settings.traces.length) throw new Refusal(-114);
-    return number - 1;
-  };
-  return [
-    numberCommand(
-      'CALCulate#:PARameter:COUNt',
-      'none',
-      limits.traces,
-      () => state.settings.traces.length,
-      (count) => state.change(withCount(state.settings.traces, Math.round(count), state.settings.active)),
-    ),
-    {
-      pattern: 'CALCulate#:PARameter#:DEFine',
-      takes: [1, 1],
-      set: ({ parameters, suffixes }) => {
-        const parameter = parameterNames.find((name) => isWord(parameters[0]!, name));
-        if (!parameter) throw new Refusal(-224);
-        state.change({ traces: replaced(state.settings.traces, indexOf(suffixes), { parameter }) });
-      },
-      query: ({ suffixes }) => state.settings.traces[indexOf(suffixes)]!.parameter,
-    },
-    {
-      pattern: 'CALCulate#:PARameter#:SELect',
-      set: ({ suffixes }) => state.change({ active: indexOf(suffixes) }),
-    },
-    {
-      pattern: 'CALCulate#[:SELected]:FORMat',
-      takes: [1, 1],
-      set: ({ parameters }) => {
-        const format = wordOf(parameters[0]!, ...formatWords) as TraceFormat;
-        state.change({ traces: replaced(state.settings.traces, state.settings.active, { format }) });
-      },
-      query: () => state.settings.traces[state.settings.active]!.format,
-    },
-  ];
+/** What stands between quotes of either kind. Throws −104 where there are none. */
+export function stringOf(text: string): string {
+  const quoted = /^(["'])(.*)\1$/.exec(text);
+  if (!quoted) throw new Refusal(-104);
+  return quoted[2]!;
 }
 
-function withCount(traces: readonly Trace[], count: number, active: number) {
-  const kept = traces.slice(0, count);
-  while (kept.length < count) kept.push({ parameter: 'S11', format: 'MLOG' });
-  return { traces: kept, active: Math.min(active, count - 1) };
+export function traceFormatOf(word: string): TraceFormat {
+  return wordOf(word, ...formatWords) as TraceFormat;
 }
 
-function replaced(traces: readonly Trace[], index: number, change: Partial<Trace>): Trace[] {
+/** The selected trace. Throws −221 when none is. */
+export function activeTrace({ traces, active }: Settings): Trace {
+  const trace = traces[active];
+  if (!trace) throw new Refusal(-221);
+  return trace;
+}
+
+export function replaced(traces: readonly Trace[], index: number, change: Partial<Trace>): Trace[] {
   return traces.map((trace, i) => (i === index ? { ...trace, ...change } : trace));
 }
 
-function dataCommands(state: InstrumentState): Command[] {
-  const send = (values: Float64Array): Answer => {
-    const { format, swapped } = state.settings;
-    return formatNumbers(values, format, swapped);
-  };
-  const complexData = (): Answer => send(activeData(state).values);
-  const formattedData = (): Answer => {
-    const { values, trace } = activeData(state);
-    return send(formatted(values, trace.format));
-  };
-  const axis = (): Answer => send(state.runner.frequenciesHz);
+/** Throws −230 when the trace has no complete sweep since the last change. */
+export function complexData(state: InstrumentState, trace: Trace): Answer {
+  return numbersOf(state, valuesOf(state, trace));
+}
+
+/** As the screen shows it. Throws like complexData. */
+export function formattedData(state: InstrumentState, trace: Trace): Answer {
+  return numbersOf(state, formatted(valuesOf(state, trace), trace.format));
+}
+
+export function axis(state: InstrumentState): Answer {
+  return numbersOf(state, state.runner.frequenciesHz);
+}
+
+function numbersOf({ settings }: InstrumentState, values: Float64Array): Answer {
+  return formatNumbers(values, settings.format, settings.swapped);
+}
+
+function valuesOf({ runner }: InstrumentState, { parameter }: Trace): Float64Array {
+  const values = runner.read(parameter);
+  if (!values) throw new Refusal(-230);
+  return values;
+}
+
+/** Data of the selected trace: how two of the three trees read them. */
+export function selectedDataCommands(state: InstrumentState): Command[] {
+  const complex = (): Answer => complexData(state, activeTrace(state.settings));
+  const shown = (): Answer => formattedData(state, activeTrace(state.settings));
   return [
     {
       pattern: 'CALCulate#:DATA',
       asks: [1, 1],
-      query: ({ parameters }) =>
-        wordOf(parameters[0]!, 'SDATa', 'FDATa') === 'SDAT' ? complexData() : formattedData(),
+      query: ({ parameters }) => (wordOf(parameters[0]!, 'SDATa', 'FDATa') === 'SDAT' ? complex() : shown()),
     },
-    { pattern: 'CALCulate#[:SELected]:DATA:SDATa', query: complexData },
-    { pattern: 'CALCulate#[:SELected]:DATA:FDATa', query: formattedData },
-    { pattern: '[SENSe#]:FREQuency:DATA', query: axis },
-    { pattern: 'CALCulate#:X[:VALues]', query: axis },
+    { pattern: 'CALCulate#[:SELected]:DATA:SDATa', query: complex },
+    { pattern: 'CALCulate#[:SELected]:DATA:FDATa', query: shown },
+    {
+      pattern: 'CALCulate#[:SELected]:FORMat',
+      takes: [1, 1],
+      set: ({ parameters }) => {
+        const format = traceFormatOf(parameters[0]!);
+        state.change({ traces: replaced(state.settings.traces, state.settings.active, { format }) });
+      },
+      query: () => activeTrace(state.settings).format,
+    },
+    { pattern: 'CALCulate#:X[:VALues]', query: () => axis(state) },
   ];
-}
-
-/** Throws −230 when the active trace has no complete sweep since the last change. */
-function activeData({ settings, runner }: InstrumentState): { values: Float64Array; trace: Trace } {
-  const trace = settings.traces[settings.active]!;
-  const values = runner.read(trace.parameter);
-  if (!values) throw new Refusal(-230);
-  return { values, trace };
 }
 
 /** One number for each point, two in the complex planes. */
@@ -123,9 +113,10 @@ function formatted(values: Float64Array, format: TraceFormat): Float64Array {
   });
 }
 
-function formatCommands(state: InstrumentState): Command[] {
+export function formatCommands(state: InstrumentState): Command[] {
   const digits = { min: 0, max: 12, def: 0 };
   return [
+    { pattern: '[SENSe#]:FREQuency:DATA', query: () => axis(state) },
     {
       pattern: 'FORMat[:DATA]',
       takes: [1, 2],

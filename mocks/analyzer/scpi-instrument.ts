@@ -1,11 +1,14 @@
-// A simulated two-port network analyzer that speaks SCPI with numbered traces. The wire is a visitor's
+// A simulated two-port network analyzer that speaks SCPI in one of several command trees. The wire is a visitor's
 // link, time is the clock's, and what it measures is handed in; see faults.ts for how to make it misbehave.
 import type { Clock } from '../../drivers/clock.ts';
 import type { Link } from '../../drivers/link/link.ts';
 import { type Answer, type Command, CommandTree } from './command-tree.ts';
+import { namedMeasurementCommands } from './command-trees/named-measurement.ts';
+import { numberedParameterCommands } from './command-trees/numbered-parameter.ts';
+import { selectedTraceCommands } from './command-trees/selected-trace.ts';
 import { commonCommands } from './commands-common.ts';
 import { stimulusCommands } from './commands-stimulus.ts';
-import { traceCommands } from './commands-traces.ts';
+import { formatCommands } from './commands-traces.ts';
 import { Refusal } from './error-queue.ts';
 import type { InstrumentFaults } from './faults.ts';
 import { InstrumentState } from './instrument-state.ts';
@@ -31,7 +34,15 @@ export interface ScpiInstrumentOptions {
   timing?: SweepTiming;
   /** A calibration is there and in force after every reset; default true. */
   calibrated?: boolean;
+  /** How traces are defined and chosen, and sweeps started; default `numbered-parameter`. */
+  commandTree?: keyof typeof commandTrees;
 }
+
+const commandTrees = {
+  'numbered-parameter': numberedParameterCommands,
+  'named-measurement': namedMeasurementCommands,
+  'selected-trace': selectedTraceCommands,
+};
 
 const defaultIdentity = ['NIGHTCUT', 'BENCH-2PORT', 'SIM-0001', '1.0'] as const;
 
@@ -57,10 +68,12 @@ export class ScpiInstrument {
     const identity = (options.identity ?? defaultIdentity).join(',');
     this.#state = new InstrumentState(identity, calibrated, settings, runner);
     this.#state.status.powerOn();
+    const commandTree = options.commandTree ?? 'numbered-parameter';
     this.#tree = new CommandTree([
       ...commonCommands(this.#state),
-      ...stimulusCommands(this.#state),
-      ...traceCommands(this.#state),
+      ...stimulusCommands(this.#state, commandTree !== 'selected-trace'),
+      ...commandTrees[commandTree](this.#state),
+      ...formatCommands(this.#state),
     ]);
   }
 

@@ -10,6 +10,12 @@ export type TriggerSource = 'IMM' | 'INT' | 'BUS' | 'MAN' | 'EXT';
 export interface Trace {
   parameter: SParameterName;
   format: TraceFormat;
+  /** How commands speak of it, where they do so by name. */
+  name: string;
+  /** How commands speak of it, where they do so by a number that stays with it. */
+  number: number;
+  /** It stands in a window of the screen. */
+  shown: boolean;
 }
 
 export interface Settings {
@@ -31,7 +37,7 @@ export interface Settings {
   continuous: boolean;
   triggerSource: TriggerSource;
   traces: readonly Trace[];
-  /** Index of the trace that data are read from. */
+  /** Index of the trace that data are read from; −1: none is selected. */
   active: number;
   format: DataFormat;
   swapped: boolean;
@@ -46,6 +52,8 @@ export const limits = {
   dwellS: { min: 0, max: 10, def: 0 },
   traces: { min: 1, max: 16, def: 1 },
 } as const satisfies Record<string, Limits>;
+
+const firstTrace: Trace = { parameter: 'S11', format: 'MLOG', name: 'FIRST', number: 1, shown: true };
 
 /** As after reset; whether the calibration stays in force is the instrument's own way. */
 export function presetSettings(correctionOn: boolean): Settings {
@@ -66,7 +74,7 @@ export function presetSettings(correctionOn: boolean): Settings {
     interpolationOn: true,
     continuous: true,
     triggerSource: 'INT',
-    traces: [{ parameter: 'S11', format: 'MLOG' }],
+    traces: [firstTrace],
     active: 0,
     format: 'ascii',
     swapped: false,

@@ -210,7 +210,8 @@ export class SweepRunner {
   }
 
   #planOf(settings: Settings, grid: Float64Array): Plan {
-    const wanted = [...new Set(settings.traces.map((trace) => trace.parameter))].toSorted();
+    const shown = settings.traces.filter((trace) => trace.shown);
+    const wanted = [...new Set(shown.map((trace) => trace.parameter))].toSorted();
     const passes = ([1, 2] as const)
       .map((drivenPort) => ({
         drivenPort,
