@@ -6,12 +6,6 @@ import { askTwice, type GcodeParts } from './gcode-parts.ts';
 import type { Placed } from './gcode-reference.ts';
 import { type ControllerLine, planeInParserState } from './gcode-reports.ts';
 
-/**
- * `missing`: not set since the last reset, or the answer was lost on the way; `impossible`: the controller does
- * not keep or print it, so that much that is sure elsewhere has to be taken for a restart.
- */
-export type MemoryMark = 'set' | 'missing' | 'impossible';
-
 /** A plane that no controller starts in and no straight move asks for. */
 const markPlane = 18;
 /** A print-out may be damaged on the wire. */

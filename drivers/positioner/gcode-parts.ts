@@ -4,13 +4,19 @@ import type { Clock } from '../clock.ts';
 import { DriverError, isDriverError } from '../errors.ts';
 import type { Link } from '../link/link.ts';
 import { alarmError } from './gcode-failures.ts';
-import type { MemoryMark } from './gcode-memory.ts';
 import type { GcodeReference, Placed } from './gcode-reference.ts';
 import { type ControllerLine, isHeld, isMoving } from './gcode-reports.ts';
 import type { GcodeSender } from './gcode-sender.ts';
 import type { Settings } from './gcode-settings.ts';
 import type { AxisSetup, Position } from './positioner.ts';
 import { motionSeconds } from './travel.ts';
+
+/**
+ * Proof against a restart unseen, see gcode-memory.ts. `missing`: not set since the last reset, or the answer was
+ * lost on the way; `impossible`: the controller does not keep or print it, so that much that is sure elsewhere has
+ * to be taken for a restart.
+ */
+export type MemoryMark = 'set' | 'missing' | 'impossible';
 
 export interface GcodeParts {
   axes: readonly AxisSetup[];
@@ -20,7 +26,6 @@ export interface GcodeParts {
   reference: GcodeReference;
   /** As read at connection; empty before. */
   settings: Settings;
-  /** See gcode-memory.ts. */
   memoryMark: MemoryMark;
 }
 
