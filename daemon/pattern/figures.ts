@@ -1,6 +1,6 @@
 // All figures of one cut at one frequency, under the keys that the figures document prints. The order of
-// the work: check, peak, half-power beam (twice: see beam-top.ts), nulls and lobes, ratios.
-import { beamTopDb } from './beam-top.ts';
+// the work: check, peak, half-power beam (twice: see beam-top.ts), direction, nulls and lobes, ratios.
+import { beamTop } from './beam-top.ts';
 import { type Beamwidth, beamwidth } from './beamwidth.ts';
 import { circularity } from './circularity.ts';
 import { type Cut, checkCut } from './cut.ts';
@@ -13,6 +13,7 @@ import { frontToRear } from './front-to-rear.ts';
 import { firstNullBeamwidth } from './nulls.ts';
 import { finite } from './pattern-error.ts';
 import { type Peak, peakOf } from './peak.ts';
+import { pointing } from './pointing.ts';
 import { firstSideLobeDb, sideLobeLevelDb } from './side-lobes.ts';
 import { squint } from './squint.ts';
 
@@ -52,6 +53,8 @@ export interface CutFigureOptions {
 /**
  * All figures of one cut at one frequency.
  *
+ * With `floorDb` the direction of the peak, and with it front-to-back and front-to-rear, is that of the
+ * beam's top as a curve where noise would move the three-neighbour parabola further: see `pointing`.
  * Works on any `Cut`, level-only or complex; 401 frequencies of 361 angles take well under a second.
  *
  * @param cut N angles in degrees (ascending, less than one turn) and N levels in dB; `periodic` for a full turn
@@ -66,18 +69,20 @@ export function cutFigures(cut: Cut, options: CutFigureOptions = {}): CutFigures
   const floor = floorBeside(peak.levelDb, options.floorDb);
   if (options.floorDb !== undefined && peak.levelDb <= floor.resolvedDb) return unresolved(options);
   const firstReading = beamwidth(cut, peak);
-  const referenceDb = firstReading.kind === 'value' ? beamTopDb(cut, peak, firstReading) : peak.levelDb;
+  const top = firstReading.kind === 'value' ? beamTop(cut, peak, firstReading) : undefined;
+  const referenceDb = top?.levelDb ?? peak.levelDb;
+  const pointed = pointing(cut, peak, top, options.floorDb);
   const halfPower = beamwidth(cut, peak, { referenceDb });
   const tenDb = beamwidth(cut, peak, { dropDb: 10, referenceDb });
   const extrema = extremaAboveNoise(cut, peak, firstReading, floor, options);
   const figures: CutFigures = {
-    peakDeg: peakDirection(peak),
+    peakDeg: peakDirection(pointed),
     halfPowerBeamwidthDeg: halfPower.kind === 'value' ? valueFigure(halfPower.value) : halfPower,
     tenDbBeamwidthDeg: tenDb.kind === 'value' ? valueFigure(tenDb.value) : tenDb,
     firstNullBeamwidthDeg: firstNullBeamwidth(extrema),
     squintDeg: squint(halfPower, finite('boresightDeg', options.boresightDeg ?? 0)),
-    frontToBackDb: frontToBack(cut, peak, floor),
-    frontToRearDb: frontToRear(cut, peak, floor, options.rearHalfWidthDeg),
+    frontToBackDb: frontToBack(cut, pointed, floor),
+    frontToRearDb: frontToRear(cut, pointed, floor, options.rearHalfWidthDeg),
     firstSideLobeLeftDb: firstSideLobeDb(cut, peak, extrema, 'left', floor),
     firstSideLobeRightDb: firstSideLobeDb(cut, peak, extrema, 'right', floor),
     sideLobeLevelDb: sideLobeLevelDb(extrema, peak, floor),

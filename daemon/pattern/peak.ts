@@ -32,7 +32,8 @@ export interface Peak {
  *
  * Unequal steps are allowed; a full turn wraps. The sample stands as it is, and `because` says so, at the
  * edge of a part of a turn, where three or more neighbours share the largest level (their middle is taken),
- * and where the parabola would lift the level by more than `largestLiftDb`.
+ * and where the parabola would lift the level by more than `largestLiftDb`. On a wide beam noise moves this
+ * angle by degrees: where the noise is known, figures take theirs from `pointing`.
  *
  * @param cut levels in dB over degrees
  * @param floorDb the range's floor in the unit of the levels, where it is known: differences that its noise
@@ -61,8 +62,15 @@ export function peakOf(cut: Cut, floorDb?: number): Peak {
   return refinedAt(cut, plateau.indices[0] ?? largest, anglesDeg.length);
 }
 
-/** Standard deviation in dB of a level that stands over noise: 8.686 dB × n/(√2·a) for small n/a. */
-function levelNoiseDb(levelDb: number, floorDb: number): number {
+/**
+ * Standard deviation of a level that stands over additive complex noise: 8.686 dB × n/(√2·a) for small n/a.
+ *
+ * @param levelDb the level in dB
+ * @param floorDb level of the noise's rms amplitude in the same unit
+ * @returns standard deviation in dB; that of equal amplitudes when the noise is the stronger
+ * Source: first order in n/a, closed form. Checked: tests/unit/daemon/pattern/pointing.test.ts.
+ */
+export function levelNoiseDb(levelDb: number, floorDb: number): number {
   return (
     (20 / Math.LN10) * (amplitudeRatio(Math.max(lowestLevelDb, Math.min(0, floorDb - levelDb))) / Math.SQRT2)
   );

@@ -1,6 +1,6 @@
 import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
-import { beamTopDb } from '../../../../daemon/pattern/beam-top.ts';
+import { beamTop } from '../../../../daemon/pattern/beam-top.ts';
 import { beamwidth } from '../../../../daemon/pattern/beamwidth.ts';
 import type { Cut } from '../../../../daemon/pattern/cut.ts';
 import { cutFigures } from '../../../../daemon/pattern/figures.ts';
@@ -16,7 +16,7 @@ function topDb(cut: Cut): number {
   const peak = peakOf(cut);
   const width = beamwidth(cut, peak);
   if (width.kind === 'absent') throw new Error(width.because);
-  return beamTopDb(cut, peak, width);
+  return beamTop(cut, peak, width).levelDb;
 }
 
 describe('the level of the beam’s top', () => {
@@ -66,7 +66,7 @@ describe('the level of the beam’s top', () => {
           const peak = peakOf(cut);
           const width = beamwidth(cut, peak);
           if (width.kind === 'value')
-            expect(Math.abs(beamTopDb(cut, peak, width) - peak.levelDb)).toBeLessThanOrEqual(0.25);
+            expect(Math.abs(beamTop(cut, peak, width).levelDb - peak.levelDb)).toBeLessThanOrEqual(0.25);
         },
       ),
     );
