@@ -13,7 +13,8 @@ export function parsePlan(text: string, path: string): Plan {
     path: resolve(path),
     text,
     kind,
-    antenna: written.antenna,
+    antenna: { name: written.antenna.name, revision: written.antenna.revision },
+    ...expectedOf(written.antenna),
     band: { startHz: band.from, stopHz: band.to, points: band.points },
     markersHz: written.markers,
     analyzer: {
@@ -25,6 +26,16 @@ export function parsePlan(text: string, path: string): Plan {
     cuts: written.cuts.map(cutOf),
     tieEverySamples: written.ties.every,
     checks: { closureDb: written.checks.closure, driftDb: written.checks.drift },
+  };
+}
+
+function expectedOf({ size, expectedGain }: PlanText['antenna']): Pick<Plan, 'expected'> {
+  if (size === undefined && expectedGain === undefined) return {};
+  return {
+    expected: {
+      ...(size === undefined ? {} : { sizeM: size }),
+      ...(expectedGain === undefined ? {} : { gainDbi: expectedGain }),
+    },
   };
 }
 

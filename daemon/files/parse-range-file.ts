@@ -9,7 +9,7 @@ import { type RangeText, rangeSchema } from './range-schema.ts';
 /** `path` as the operator wrote it, for messages and relative paths. Throws FILE_INVALID. */
 export function parseRangeFile(text: string, path: string): RangeFile {
   const written = checkText(text, path, rangeSchema, checkRange);
-  const { heights, analyzer, positioner, antennas } = written;
+  const { heights, positioner, antennas } = written;
   const absolute = resolve(path);
   return {
     path: absolute,
@@ -17,11 +17,27 @@ export function parseRangeFile(text: string, path: string): RangeFile {
     name: written.range,
     rangeLengthM: written.rangeLength,
     ...(heights ? { heights: { rangeAntennaM: heights.rangeAntenna, autM: heights.aut } } : {}),
-    analyzer: { ...analyzer, autPort: analyzer.autPort === 1 ? 1 : 2 },
+    ...given('nearestWallM', written.nearestWall),
+    ...given('autOffsetM', written.autOffset),
+    ...given('cableLossDb', written.cableLoss),
+    ...given('cautionLimitWM2', written.cautionLimit),
+    analyzer: analyzerOf(written.analyzer),
     positioner: { link: positioner.link, family: positioner.family, axes: axesOf(written) },
     rangeAntenna: antennas.rangeAntenna,
+    ...given('rangeAntennaSizeM', antennas.rangeAntennaSize),
+    ...given('rangeAntennaGainDbi', antennas.rangeAntennaGain),
     ...(antennas.reference ? { reference: referenceOf(antennas.reference) } : {}),
     archive: resolve(dirname(absolute), written.archive),
+  };
+}
+
+function analyzerOf({ noiseFloor, ...written }: RangeText['analyzer']): RangeFile['analyzer'] {
+  return {
+    ...written,
+    autPort: written.autPort === 1 ? 1 : 2,
+    ...(noiseFloor
+      ? { noiseFloor: { levelDbm: noiseFloor.level, ifBandwidthHz: noiseFloor.ifBandwidth } }
+      : {}),
   };
 }
 
@@ -50,8 +66,14 @@ function referenceOf(written: NonNullable<RangeText['antennas']['reference']>): 
     name: written.name,
     stated,
     table: table.map(({ at, gain }) => ({ frequencyHz: at, gainDbi: gain })),
-    ...(uncertainty === undefined ? {} : { uncertaintyDb: uncertainty }),
+    ...given('uncertaintyDb', uncertainty),
+    ...given('sizeM', written.size),
   };
+}
+
+/** A key only where a value was written. */
+function given<Key extends string>(key: Key, value: number | undefined): { [K in Key]?: number } {
+  return value === undefined ? {} : ({ [key]: value } as { [K in Key]: number });
 }
 
 function checkRange(written: RangeText): Finding[] {

@@ -21,6 +21,8 @@ export interface Plan {
   text: string;
   kind: 'pattern' | 'reference';
   antenna: { name: string; revision: string };
+  /** What is known of the antenna beforehand: largest dimension, gain as designed. */
+  expected?: { sizeM?: number; gainDbi?: number };
   band: { startHz: number; stopHz: number; points: number };
   /** Frequencies the antenna is built for: match and tables are given there. */
   markersHz: readonly number[];

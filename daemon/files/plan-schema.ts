@@ -27,7 +27,12 @@ const cut = keys({
 const tolerated: Limits = { above: 0, to: 60, says: 'above 0 and up to 60 dB' };
 
 export const planSchema = keys({
-  antenna: keys({ name: name('the name of the antenna'), revision: name('a revision', 40) }),
+  antenna: keys({
+    name: name('the name of the antenna'),
+    revision: name('a revision', 40),
+    size: quantity('length', { above: 0, to: 100, says: 'above 0 m and up to 100 m' }).optional(),
+    expectedGain: quantity('gain', { from: -60, to: 60, says: 'from -60 to 60 dBi' }).optional(),
+  }),
   kind: choice(['pattern', 'reference']),
   band: keys({
     from: quantity('frequency', frequency),

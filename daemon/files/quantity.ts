@@ -12,7 +12,8 @@ export type QuantityKind =
   | 'angle'
   | 'rate'
   | 'acceleration'
-  | 'scale';
+  | 'scale'
+  | 'power density';
 
 export type ParsedQuantity = { kind: 'value'; value: number } | { kind: 'refused'; advice?: string };
 
@@ -35,7 +36,7 @@ function unit(power: number, ...symbols: string[]): Unit {
   return { symbols, power };
 }
 
-/** Values come out in Hz, dBm, dBi, dB, m, ms, degrees, degrees/s, degrees/s² and controller units per degree. */
+/** Values come out in Hz, dBm, dBi, dB, m, ms, degrees, degrees/s, degrees/s², controller units per degree and W/m². */
 export const quantities: Readonly<Record<QuantityKind, Quantity>> = {
   frequency: {
     expectation: 'a frequency with unit such as 868 MHz',
@@ -90,6 +91,11 @@ export const quantities: Readonly<Record<QuantityKind, Quantity>> = {
   scale: {
     expectation: 'controller units per degree such as 8.889 units/deg',
     units: [unit(0, 'units/deg', 'units/°')],
+  },
+  'power density': {
+    expectation: 'a power density with unit such as 2 W/m2',
+    units: [unit(0, 'W/m2', 'W/m²', 'W/m^2'), unit(1, 'mW/cm2', 'mW/cm²', 'mW/cm^2')],
+    strangers: { 'V/m': 'give the power density of the plane wave: the square of the field over 377 ohm' },
   },
 };
 

@@ -20,6 +20,8 @@ export interface ReferenceAntenna {
   table: readonly { frequencyHz: number; gainDbi: number }[];
   /** Standard uncertainty of the table where its owner knows it. */
   uncertaintyDb?: number;
+  /** Largest dimension. */
+  sizeM?: number;
 }
 
 export interface RangeFile {
@@ -29,15 +31,28 @@ export interface RangeFile {
   name: string;
   rangeLengthM: number;
   heights?: { rangeAntennaM: number; autM: number };
+  /** From the line between the antennas to the nearest wall or other large surface along it. */
+  nearestWallM?: number;
+  /** From the rotation axis to the middle of the AUT. */
+  autOffsetM?: number;
+  /** All that cables, adapters and pads take between the analyzer's ports and both antennas, together. */
+  cableLossDb?: number;
+  /** Power density that nobody shall be exposed to, where the operator's own limit is to be used. */
+  cautionLimitWM2?: number;
   analyzer: {
     link: LinkAddress;
     dialect: string;
     /** The port the AUT is connected to; the range antenna is on the other of 1 and 2. */
     autPort: 1 | 2;
     trace: { format: 'real64' | 'real32' | 'ascii'; byteOrder: 'normal' | 'swapped' };
+    /** Mean noise of the receiver without a signal, at the IF bandwidth it was read with. */
+    noiseFloor?: { levelDbm: number; ifBandwidthHz: number };
   };
   positioner: { link: LinkAddress; family: 'realtime-status'; axes: readonly RangeAxis[] };
   rangeAntenna: string;
+  /** Largest dimension of the range antenna, and its gain as far as it is known. */
+  rangeAntennaSizeM?: number;
+  rangeAntennaGainDbi?: number;
   reference?: ReferenceAntenna;
   /** Absolute path of the archive. */
   archive: string;

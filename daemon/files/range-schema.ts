@@ -27,6 +27,8 @@ const link = z
   .meta({ pattern: '^(tcp|serial)://', description: linkExpectation });
 
 const travelAngle: Limits = { from: -3600, to: 3600, says: 'within ten turns' };
+const antennaSize: Limits = { above: 0, to: 100, says: 'above 0 m and up to 100 m' };
+const antennaGain: Limits = { from: -60, to: 60, says: 'from -60 to 60 dBi' };
 const height: Limits = { above: 0, to: 1000, says: 'above 0 m and up to 1 km' };
 
 const axis = keys({
@@ -53,13 +55,14 @@ const trace = keys({
 
 const reference = keys({
   name: name('the name of the reference antenna'),
+  size: quantity('length', antennaSize).optional(),
   gain: keys({
     stated: choice(['ieee', 'realized']),
     uncertainty: quantity('ratio', { from: 0, to: 10, says: 'from 0 to 10 dB' }).optional(),
     table: list(
       keys({
         at: quantity('frequency', { above: 0, says: 'above 0 Hz' }),
-        gain: quantity('gain', { from: -60, to: 60, says: 'from -60 to 60 dBi' }),
+        gain: quantity('gain', antennaGain),
       }),
       'a list of frequencies and gains such as { at: 868 MHz, gain: 2.1 dBi }',
       1,
@@ -67,15 +70,30 @@ const reference = keys({
   }),
 });
 
+/** Mean noise of the receiver without a signal, in the IF bandwidth it was read with. */
+const noiseFloor = keys({
+  level: quantity('power', { from: -200, to: 0, says: 'from -200 to 0 dBm' }),
+  ifBandwidth: quantity('frequency', { above: 0, to: 1e8, says: 'above 0 Hz and up to 100 MHz' }),
+});
+
 export const rangeSchema = keys({
   range: name('the name of the range', 40),
   rangeLength: quantity('length', { above: 0, to: 100_000, says: 'above 0 m and up to 100 km' }),
   heights: keys({ rangeAntenna: quantity('length', height), aut: quantity('length', height) }).optional(),
+  nearestWall: quantity('length', { above: 0, to: 10_000, says: 'above 0 m and up to 10 km' }).optional(),
+  autOffset: quantity('length', { from: 0, to: 100, says: 'from 0 m to 100 m' }).optional(),
+  cableLoss: quantity('ratio', { from: 0, to: 100, says: 'from 0 to 100 dB' }).optional(),
+  cautionLimit: quantity('power density', {
+    above: 0,
+    to: 1000,
+    says: 'above 0 and up to 1000 W/m2',
+  }).optional(),
   analyzer: keys({
     link,
     dialect: choice(dialectNames),
     autPort: wholeNumber(1, 2),
     trace: trace.prefault({}),
+    noiseFloor: noiseFloor.optional(),
   }),
   positioner: keys({
     link,
@@ -86,6 +104,8 @@ export const rangeSchema = keys({
   }),
   antennas: keys({
     rangeAntenna: name('the name of the range antenna'),
+    rangeAntennaSize: quantity('length', antennaSize).optional(),
+    rangeAntennaGain: quantity('gain', antennaGain).optional(),
     reference: reference.optional(),
   }),
   archive: name('the path of the archive file', 1000).prefault('nightcut.sqlite'),

@@ -203,6 +203,18 @@ const wrong: [number, string | undefined, number, string][] = [
   [31, '  drift: !!float 1', 31, 'expected YAML; '],
 ];
 
+describe('what is expected of the antenna', () => {
+  it('stands beside its name, and is no part of it', () => {
+    const written = planLines.map((line) =>
+      line === '  revision: 1.10' ? `${line}\n  size: 52 cm\n  expectedGain: 11.1 dBi` : line,
+    );
+    const plan = parse(whole(written));
+    expect(plan.expected).toStrictEqual({ sizeM: 0.52, gainDbi: 11.1 });
+    expect(plan.antenna).toStrictEqual({ name: 'river-gauge yagi', revision: '1.10' });
+    expect('expected' in parse(whole(planLines))).toBe(false);
+  });
+});
+
 describe('a wrong plan', () => {
   it.each(wrong)('line %i as %j is told in line %i: %s', (line, by, told, text) => {
     const error = refusalOf(() => parse(spoiled(planLines, line, by)));

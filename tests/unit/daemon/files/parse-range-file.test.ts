@@ -72,6 +72,45 @@ describe('a range file', () => {
     });
   });
 
+  it('takes what a check before the night needs', () => {
+    const known = [
+      [
+        'rangeLength: 6 m',
+        'nearestWall: 4 m',
+        'autOffset: 0 cm',
+        'cableLoss: 3.5 dB',
+        'cautionLimit: 0.2 mW/cm2',
+      ],
+      ['  autPort: 1', '  noiseFloor: { level: -110 dBm, ifBandwidth: 1 kHz }'],
+      [
+        '  rangeAntenna: telemetry panel, range end',
+        '  rangeAntennaSize: 40 cm',
+        '  rangeAntennaGain: 9 dBi',
+      ],
+      ['    name: half-wave dipole', '    size: 165 mm'],
+    ];
+    const lines = rangeLines.map((line) => known.find(([first]) => first === line)?.join('\n') ?? line);
+    const range = parse(whole(lines));
+    expect(range).toMatchObject({
+      nearestWallM: 4,
+      autOffsetM: 0,
+      cableLossDb: 3.5,
+      cautionLimitWM2: 2,
+      analyzer: { noiseFloor: { levelDbm: -110, ifBandwidthHz: 1000 } },
+      rangeAntennaSizeM: 0.4,
+      rangeAntennaGainDbi: 9,
+      reference: { sizeM: 0.165 },
+    });
+    for (const [from, to] of [
+      ['autOffset: 0 cm', 'autOffset: -1 cm'],
+      ['rangeAntennaSize: 40 cm', 'rangeAntennaSize: 0 m'],
+      ['cautionLimit: 0.2 mW/cm2', 'cautionLimit: 28 V/m'],
+    ] as const) {
+      const { message } = refusalOf(() => parse(whole(lines).replace(from, to)));
+      expect(message).toContain(from.split(':')[0]);
+    }
+  });
+
   it('does without what is optional', () => {
     const dropped = [3, 4, 5, 10, 11, 12, 28, 34, 35, 36, 37, 38, 39, 40, 41, 42];
     const range = parse(whole(rangeLines.filter((_, i) => !dropped.includes(i + 1))));

@@ -33,6 +33,8 @@ const good: [QuantityKind, string, number][] = [
   ['acceleration', '40 deg/s²', 40],
   ['acceleration', '40 °/s^2', 40],
   ['scale', '8.889 units/deg', 8.889],
+  ['power density', '0.2 mW/cm2', 2],
+  ['power density', '4.34 W/m²', 4.34],
 ];
 
 const bad: [QuantityKind, string, string | undefined][] = [
@@ -70,6 +72,7 @@ const bad: [QuantityKind, string, string | undefined][] = [
   ['angle', '1 constructor', undefined],
   ['rate', '3 rpm', '6 deg/s'],
   ['rate', '20 deg', undefined],
+  ['power density', '28 V/m', 'plane wave'],
 ];
 
 describe('quantities', () => {
