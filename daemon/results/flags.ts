@@ -2,11 +2,16 @@
 // frequency in a null says nothing of the range.
 import type { SetupRecord } from '../archive/archive.ts';
 import type { Plan, PlanCut } from '../files/plan-file.ts';
+import { narrowReadingDeg } from '../pattern/beamwidth.ts';
 import type { Figure } from '../pattern/figure.ts';
 import type { CutLevels } from './cut-levels.ts';
-import type { Flag } from './figures-document.ts';
+import type { CutFigures, FigureEntry, Flag } from './figures-document.ts';
 
-export function cutFlags(plan: Plan, cut: PlanCut, levels: CutLevels): Flag[] {
+/** Fewer steps across the half-power beam than this, and its width reads narrow by 0.35 % or more. */
+const fewestSteps = 12;
+
+/** `figures`: those of the same cut, as the document has them. */
+export function cutFlags(plan: Plan, cut: PlanCut, levels: CutLevels, figures: CutFigures): Flag[] {
   const flags: Flag[] = [];
   const flag = (code: string, text: string): void => {
     flags.push({ code, text, cut: cut.name });
@@ -29,7 +34,35 @@ export function cutFlags(plan: Plan, cut: PlanCut, levels: CutLevels): Flag[] {
   if (levels.driftRefused) {
     flag('DRIFT_NOT_CORRECTED', `${cut.name}: drift was not corrected: ${levels.driftRefused.because}`);
   }
+  const coarse = coarseStep(figures);
+  if (coarse) flag('STEP_COARSE', `${cut.name}: ${coarse}`);
   return flags;
+}
+
+/** What there is to say of a step too coarse for the beam; undefined where it is fine enough. */
+function coarseStep({ anglesDeg, figures }: CutFigures): string | undefined {
+  const widthDeg = median((figures.halfPowerBeamwidthDeg ?? []).flatMap(valueOfEntry));
+  const stepDeg = median(anglesDeg.slice(1).map((angleDeg, k) => angleDeg - anglesDeg[k]!));
+  if (widthDeg === undefined || stepDeg === undefined || widthDeg >= fewestSteps * stepDeg) return undefined;
+  const narrowDeg = narrowReadingDeg(widthDeg, stepDeg);
+  return (
+    `the step of ${rounded(stepDeg)}° is coarse for a half-power beamwidth of ${widthDeg.toFixed(1)}° (median over the band): ` +
+    `it may read up to ${narrowDeg.toPrecision(1)}° (${((100 * narrowDeg) / widthDeg).toFixed(1)} %, an estimate) narrow; measure with steps of ${rounded(roundedDown(widthDeg / fewestSteps))}° or less`
+  );
+}
+
+function valueOfEntry(entry: FigureEntry): number[] {
+  return 'absent' in entry || entry.bound ? [] : [entry.value];
+}
+
+/** Never upwards: to a tenth of a degree, below that to one digit. */
+function roundedDown(stepDeg: number): number {
+  const unit = Math.min(0.1, 10 ** Math.floor(Math.log10(stepDeg)));
+  return Math.floor(stepDeg / unit + 1e-9) * unit;
+}
+
+function rounded(deg: number): number {
+  return Number(deg.toPrecision(3));
 }
 
 export function runFlags(setups: readonly SetupRecord[], segments: number): Flag[] {
@@ -50,8 +83,9 @@ export function runFlags(setups: readonly SetupRecord[], segments: number): Flag
 }
 
 function medianDb(figures: readonly Figure[]): number | undefined {
-  const values = figures
-    .flatMap((figure) => (figure.kind === 'value' ? [Math.abs(figure.value)] : []))
-    .sort((a, b) => a - b);
-  return values[Math.floor(values.length / 2)];
+  return median(figures.flatMap((figure) => (figure.kind === 'value' ? [Math.abs(figure.value)] : [])));
+}
+
+function median(values: readonly number[]): number | undefined {
+  return [...values].sort((a, b) => a - b)[Math.floor(values.length / 2)];
 }

@@ -37,8 +37,9 @@ export async function runFigures(
   const flags: Flag[] = runFlags(setups, segments.length);
   for (const cut of frequenciesHz.length > 0 ? plan.cuts : []) {
     const levels = cutLevels(samples, cut.name, frequenciesHz, floorDb);
-    cuts.push(figuresOfCut(run, cut, levels, frequenciesHz, reflection, options));
-    flags.push(...cutFlags(plan, cut, levels));
+    const figures = figuresOfCut(run, cut, levels, frequenciesHz, reflection, options);
+    cuts.push(figures);
+    flags.push(...cutFlags(plan, cut, levels, figures));
   }
   return {
     ...head(run, plan, frequenciesHz),

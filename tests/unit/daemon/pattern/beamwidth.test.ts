@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { beamwidth } from '../../../../daemon/pattern/beamwidth.ts';
+import { beamwidth, narrowReadingDeg } from '../../../../daemon/pattern/beamwidth.ts';
 import { PatternError } from '../../../../daemon/pattern/pattern-error.ts';
 import { peakOf } from '../../../../daemon/pattern/peak.ts';
 import { byHand, parabola, part, turn } from './cut-samples.ts';
@@ -83,3 +83,35 @@ describe('beamwidth', () => {
 function withPeak(cut: ReturnType<typeof turn>): [typeof cut, ReturnType<typeof peakOf>] {
   return [cut, peakOf(cut)];
 }
+
+describe('how much narrow a beamwidth reads', () => {
+  it('is never more than stated, and up to it, for lobes that are parabolas in dB', () => {
+    for (const widthDeg of [6.3, 17.6, 49]) {
+      for (const stepDeg of [0.5, 1, 2]) {
+        const stated = narrowReadingDeg(widthDeg, stepDeg);
+        let [most, least] = [0, Number.POSITIVE_INFINITY];
+        // The top and the width at all places between the samples.
+        for (let at = 0; at < 1; at += 0.04) {
+          for (let wide = 0; wide < 1; wide += 0.04) {
+            const [topDeg, width] = [at * stepDeg, widthDeg + wide * stepDeg];
+            const cut = turn((deg) => Math.max(-40, parabola(width, topDeg)(deg)), stepDeg);
+            const found = beamwidth(cut, peakOf(cut));
+            if (found.kind !== 'value') throw new Error(found.because);
+            most = Math.max(most, width - found.value);
+            least = Math.min(least, width - found.value);
+          }
+        }
+        const what = `${widthDeg}° at ${stepDeg}°`;
+        expect(least, what).toBeGreaterThan(-1e-9);
+        // To second order: the slope changes by a share of step/width on the way to the next sample.
+        expect(most / stated, what).toBeLessThan(1 + stepDeg / widthDeg);
+        expect(most / stated, what).toBeGreaterThan(0.9 - stepDeg / widthDeg);
+      }
+    }
+  });
+
+  it('is 0.35 % at a twelfth of the width', () => {
+    expect(narrowReadingDeg(12, 1) / 12).toBeCloseTo(1 / 288, 12);
+    expect(() => narrowReadingDeg(0, 1)).toThrow(PatternError);
+  });
+});
