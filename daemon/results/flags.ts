@@ -5,7 +5,7 @@ import type { Plan, PlanCut } from '../files/plan-file.ts';
 import { narrowReadingDeg } from '../pattern/beamwidth.ts';
 import type { Figure } from '../pattern/figure.ts';
 import type { CutLevels } from './cut-levels.ts';
-import type { CutFigures, FigureEntry, Flag } from './figures-document.ts';
+import type { CutFigures, FigureEntry, FiguresDocument, Flag } from './figures-document.ts';
 
 /** Fewer steps across the half-power beam than this, and its width reads narrow by 0.35 % or more. */
 const fewestSteps = 12;
@@ -21,14 +21,14 @@ export function cutFlags(plan: Plan, cut: PlanCut, levels: CutLevels, figures: C
   if (closureDb !== undefined && closureDb > plan.checks.closureDb) {
     flag(
       'CLOSURE_LARGE',
-      `${cut.name}: the end of the turn differs from its start by ${closureDb.toFixed(2)} dB (limit ${plan.checks.closureDb} dB): look for drift, slip or a moved cable`,
+      `${cut.name}: the end of the turn differs from its start by ${closureDb.toFixed(2)} dB (median over the band; limit ${plan.checks.closureDb} dB): look for drift, slip or a moved cable`,
     );
   }
   const driftDb = medianDb(levels.driftDb);
   if (driftDb !== undefined && driftDb > plan.checks.driftDb) {
     flag(
       'DRIFT_LARGE',
-      `${cut.name}: boresight moved by ${driftDb.toFixed(2)} dB between ties (limit ${plan.checks.driftDb} dB)`,
+      `${cut.name}: boresight moved by ${driftDb.toFixed(2)} dB between ties (median over the band; limit ${plan.checks.driftDb} dB)`,
     );
   }
   if (levels.driftRefused) {
@@ -65,7 +65,12 @@ function rounded(deg: number): number {
   return Number(deg.toPrecision(3));
 }
 
-export function runFlags(setups: readonly SetupRecord[], segments: number): Flag[] {
+/** `segments`: how many the run has; between two of them it was interrupted. */
+export function runFlags(
+  setups: readonly SetupRecord[],
+  segments: number,
+  state: FiguresDocument['state'],
+): Flag[] {
   const flags: Flag[] = [];
   if (setups.some((setup) => !setup.calibration.correctionOn)) {
     flags.push({ code: 'CALIBRATION_OFF', text: 'the analyzer measured without its calibration' });
@@ -74,12 +79,15 @@ export function runFlags(setups: readonly SetupRecord[], segments: number): Flag
     flags.push({ code: 'CALIBRATION_INTERPOLATED', text: 'the analyzer interpolated its calibration' });
   }
   if (segments > 1) {
-    flags.push({
-      code: 'RUN_INTERRUPTED',
-      text: `the run was interrupted ${segments - 1} times and went on by itself`,
-    });
+    const times = timesInWords(state === 'interrupted' ? segments : segments - 1);
+    const end = state === 'complete' ? ' and went on by itself' : '';
+    flags.push({ code: 'RUN_INTERRUPTED', text: `the run was interrupted ${times}${end}` });
   }
   return flags;
+}
+
+function timesInWords(times: number): string {
+  return times === 1 ? 'once' : times === 2 ? 'twice' : `${times} times`;
 }
 
 function medianDb(figures: readonly Figure[]): number | undefined {

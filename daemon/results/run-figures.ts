@@ -34,7 +34,7 @@ export async function runFigures(
   const reflection = autReflection(run, samples);
   const floorDb = sweepNoiseDb(samples, frequenciesHz);
   const cuts: CutFigures[] = [];
-  const flags: Flag[] = runFlags(setups, segments.length);
+  const flags: Flag[] = runFlags(setups, segments.length, run.state);
   for (const cut of frequenciesHz.length > 0 ? plan.cuts : []) {
     const levels = cutLevels(samples, cut.name, frequenciesHz, floorDb);
     const figures = figuresOfCut(run, cut, levels, frequenciesHz, reflection, options);

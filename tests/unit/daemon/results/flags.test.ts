@@ -1,12 +1,12 @@
 // What is flagged, and in which words.
 import { describe, expect, it } from 'vitest';
 import type { Plan, PlanCut } from '../../../../daemon/files/plan-file.ts';
-import { absentFigure } from '../../../../daemon/pattern/figure.ts';
+import { absentFigure, type Figure, valueFigure } from '../../../../daemon/pattern/figure.ts';
 import { cutFigures } from '../../../../daemon/pattern/figures.ts';
 import type { CutLevels } from '../../../../daemon/results/cut-levels.ts';
 import { entryOf } from '../../../../daemon/results/figure-entry.ts';
 import type { CutFigures, Flag } from '../../../../daemon/results/figures-document.ts';
-import { cutFlags } from '../../../../daemon/results/flags.ts';
+import { cutFlags, runFlags } from '../../../../daemon/results/flags.ts';
 import { parabola, turn } from '../pattern/cut-samples.ts';
 
 const planCut: PlanCut = {
@@ -82,5 +82,41 @@ describe('a step too coarse for the beam', () => {
     expect(flagged([], 1)).toEqual([]);
     // Omnidirectional: no beamwidth at all.
     expect(flagged([4000, 4000], 5)).toEqual([]);
+  });
+});
+
+describe('closure and drift', () => {
+  const figures = (...values: number[]): Figure[] => values.map((value) => valueFigure(value));
+
+  it('are judged by the median over the band, and say so', () => {
+    const [closure, drift] = flagged([61], 1, {
+      closureDb: figures(0.1, -0.34, 9),
+      driftDb: figures(0.1, 0.72, 9),
+    });
+    expect(closure).toMatchObject({ code: 'CLOSURE_LARGE', text: expect.stringContaining('0.34 dB') });
+    expect(closure?.text).toContain('median over the band');
+    expect(drift).toMatchObject({ code: 'DRIFT_LARGE', text: expect.stringContaining('0.72 dB') });
+    expect(drift?.text).toContain('median over the band');
+    expect(flagged([61], 1, { closureDb: figures(0.1, 0.1, 9), driftDb: figures(0.1, 0.2, 9) })).toEqual([]);
+  });
+});
+
+describe('a run with interruptions', () => {
+  it.each([
+    [2, 'complete', 'the run was interrupted once and went on by itself'],
+    [3, 'complete', 'the run was interrupted twice and went on by itself'],
+    [6, 'complete', 'the run was interrupted 5 times and went on by itself'],
+    [2, 'failed', 'the run was interrupted once'],
+    [3, 'running', 'the run was interrupted twice'],
+    // The end of the last segment is one more.
+    [2, 'interrupted', 'the run was interrupted twice'],
+  ] as const)('of %d segments, %s: %s', (segments, state, text) => {
+    expect(runFlags([], segments, state)).toEqual([{ code: 'RUN_INTERRUPTED', text }]);
+  });
+
+  it('is not flagged for its only segment', () => {
+    expect(runFlags([], 1, 'complete')).toEqual([]);
+    // The document's state says that one.
+    expect(runFlags([], 1, 'interrupted')).toEqual([]);
   });
 });
