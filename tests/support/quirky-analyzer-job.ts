@@ -16,7 +16,9 @@ export type Trouble =
   | 'cut-power'
   | 'touch-points'
   | 'touch-continuous'
-  | 'touch-select';
+  | 'touch-select'
+  | 'touch-start'
+  | 'chatter';
 
 export interface AnalyzerJob {
   quirks: Partial<InstrumentQuirks>;
@@ -149,6 +151,8 @@ function cause(instrument: QuirkyInstrument, trouble: Trouble): void {
   else if (trouble === 'touch-points') instrument.touch({ points: 21 });
   else if (trouble === 'touch-continuous') instrument.touch({ continuous: true });
   else if (trouble === 'touch-select') instrument.touch({ select: 2 });
+  else if (trouble === 'touch-start') instrument.touch({ startHz: 790e6 });
+  else if (trouble === 'chatter') instrument.say('+1\n');
 }
 
 function settingsOf(setup: SweepSetup): object {

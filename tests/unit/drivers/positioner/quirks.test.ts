@@ -139,6 +139,14 @@ const troubles: Record<string, { job: PositionerJob; codes: DriverErrorCode[]; a
     codes: ['POSITIONER_RESTARTED', 'POSITIONER_REFERENCE_LOST', 'POSITIONER_WRONG_PLACE'],
     arrivals: 1,
   },
+  'a restart in the first degree of a move, told by no banner but the lock': {
+    job: {
+      quirks: { bannerLost: true, lockedAtStart: true },
+      moves: [{ azimuth: 0, trouble: { kind: 'restart', afterMs: 18 } }, { azimuth: 0 }],
+    },
+    codes: ['POSITIONER_ALARM', 'POSITIONER_REFERENCE_LOST'],
+    arrivals: 0,
+  },
   'a hold pressed': {
     job: { quirks: {}, moves: far({ kind: 'hold', afterMs: 1_000 }) },
     codes: ['POSITIONER_HELD'],
@@ -181,6 +189,19 @@ describe('one trouble at a time, said with the fitting code', () => {
     expect(outcome.failures, name).not.toEqual([]);
     expect(outcome.arrivals).toBe(arrivals);
   });
+});
+
+describe('a restart that nobody heard of', () => {
+  it('sends no shaft out of its travel, whenever it comes between the two parts of a move', async () => {
+    // From a false zero 98° on, another 100° would lead to 198°; the first part takes 2.65 s at 20°/s.
+    for (let afterMs = 2_600; afterMs < 3_000; afterMs += 1) {
+      const trouble: Trouble = { kind: 'restart', afterMs };
+      await runPositionerJob({
+        quirks: { bannerLost: true, bootMs: 1 },
+        moves: [{ azimuth: 151 }, { azimuth: 100, trouble }],
+      });
+    }
+  }, 30_000);
 });
 
 const quirks: fc.Arbitrary<Partial<ControllerQuirks>> = fc.record(
