@@ -8,8 +8,10 @@
 import { DriverError, isDriverError } from '../errors.ts';
 import type { Acquisition, SParameter, SweepSetup, TimeLaw } from './analyzer.ts';
 import type { ScpiConversation } from './scpi-conversation.ts';
-import { confirmAxis, confirmGrid, type InstrumentSweep } from './scpi-setup.ts';
+import type { Completion, Substitutions, TraceColumn } from './scpi-dialects.ts';
+import { confirmAxis, confirmGrid, type InstrumentSweep, requireAxis } from './scpi-setup.ts';
 import { anyErrorBits, eventBits } from './scpi-status.ts';
+import { decodeWord } from './scpi-values.ts';
 
 /** One is enough for a register that works, two where an end of before stood in it. */
 const clearingReads = 3;
@@ -50,7 +52,7 @@ export async function runSweeps(
   for (let start = 0; start < sweep.starts; start += 1) {
     startedMs.push(talk.clock.monotonicMs());
     await talk.tell('startSweep');
-    await talk.tellPlain('*OPC');
+    if (talk.dialect.completion.by === 'operation-complete-bit') await talk.tellPlain('*OPC');
     await awaitEnd(talk, sweep, startedMs, answerTimeoutMs);
   }
   const stopMonotonicMs = talk.clock.monotonicMs();
@@ -97,7 +99,7 @@ export async function confirmEnd(
 }
 
 /**
- * Polls `*ESR?` until operation complete. The deadline allows one start to run the whole average, which
+ * Polls `*ESR?` until operation complete, or asks or waits as the dialect says. The deadline allows one start to run the whole average, which
  * some instruments do whatever the dialect says; an instrument that is deaf while it sweeps answers the
  * poll only then, so that the poll may take as long.
  */
@@ -108,6 +110,12 @@ async function awaitEnd(
   answerTimeoutMs: number,
 ): Promise<void> {
   const begunMs = startedMs.at(-1) ?? talk.clock.monotonicMs();
+  const { completion } = talk.dialect;
+  if (completion.by === 'wait') {
+    const waitMs = sweep.passMs * sweep.passesPerStart * completion.factor + slackMsOf(sweep);
+    await talk.sleep(waitMs - (talk.clock.monotonicMs() - begunMs));
+    return judgeEvents(talk, await talk.readEvents(answerTimeoutMs), `sweep ${startedMs.length}`);
+  }
   const deadlineMs = begunMs + sweep.acquisitionMs * deadlineFactor + slackMsOf(sweep);
   const pause = pollPauses(talk, begunMs + sweep.passMs * sweep.passesPerStart);
   for (;;) {
@@ -115,9 +123,18 @@ async function awaitEnd(
     const leftMs = deadlineMs - talk.clock.monotonicMs();
     const events = await talk.readEvents(Math.max(answerTimeoutMs, leftMs));
     await judgeEvents(talk, events, `sweep ${startedMs.length}`);
-    if (events & eventBits.operationComplete) return;
+    if (completion.by === 'poll' ? await hasEnded(talk, completion) : events & eventBits.operationComplete)
+      return;
     if (leftMs <= 0) throw await sweepTimeout(talk, sweep, deadlineMs - begunMs);
   }
+}
+
+async function hasEnded(
+  talk: ScpiConversation,
+  { query, until }: Extract<Completion, { by: 'poll' }>,
+): Promise<boolean> {
+  const answer = await talk.askPlain(query, decodeWord);
+  return answer === decodeWord(until) || (until.trim() !== '' && Number(answer) === Number(until));
 }
 
 /** Reads the event register, which clears it: an end of before must not be taken for that of the next sweep. */
@@ -206,6 +223,24 @@ function timeLawOf(sweep: InstrumentSweep, startedMs: readonly number[], stopMs:
   return { kind: 'linear', firstMs: offsetMs + halfDwellMs, lastMs: offsetMs + passMs - halfDwellMs };
 }
 
+/** The columns of one trace, of which a frequency must be that of the point; returns (re, im, …). */
+async function readTrace(
+  talk: ScpiConversation,
+  { frequenciesHz }: InstrumentSweep,
+  values: Substitutions,
+): Promise<Float64Array> {
+  const { columns } = talk.dialect;
+  const points = frequenciesHz.length;
+  const numbers = await talk.askNumbers('dataQuery', columns.length * points, values);
+  const column = (name: TraceColumn): Float64Array => {
+    const at = columns.indexOf(name);
+    return Float64Array.from({ length: points }, (_, i) => numbers[i * columns.length + at]!);
+  };
+  if (columns.includes('frequency')) requireAxis(frequenciesHz, column('frequency'));
+  const [re, im] = [column('re'), column('im')];
+  return Float64Array.from({ length: 2 * points }, (_, i) => (i % 2 === 0 ? re : im)[i >> 1]!);
+}
+
 /** Selects and reads the wanted parameters, each 2N numbers. */
 export async function readTraces(
   talk: ScpiConversation,
@@ -215,8 +250,9 @@ export async function readTraces(
   const traces = new Map<SParameter, Float64Array>();
   for (const parameter of wanted) {
     // Before every read: another session, or a hand at the panel, may have selected something else.
-    await talk.tell('parameterSelect', { trace: sweep.parameters.indexOf(parameter) + 1, parameter });
-    traces.set(parameter, await talk.askNumbers('dataQuery', 2 * sweep.frequenciesHz.length));
+    const values = { trace: sweep.parameters.indexOf(parameter) + 1, parameter };
+    await talk.tell('parameterSelect', values);
+    traces.set(parameter, await readTrace(talk, sweep, values));
   }
   // A select that was refused leaves the trace of another parameter in its place.
   await judgeEvents(talk, await talk.readEvents(), 'reading the traces');

@@ -10,6 +10,7 @@ import { errorOf } from './scpi-status.ts';
 import {
   decodeBlock,
   decodeBoolean,
+  decodeContinuous,
   decodeNumberList,
   decodeSetting,
   decodeStated,
@@ -90,6 +91,11 @@ export class ScpiConversation {
     return this.#askDecoded(this.#message(name, values), decodeBoolean);
   }
 
+  /** Whether it sweeps on and on, asked by `continuousQuery`. */
+  askContinuous(): Promise<boolean> {
+    return this.#askDecoded(this.#message('continuousQuery', {}), decodeContinuous);
+  }
+
   askWord(name: TemplateName, values: Substitutions = {}): Promise<string> {
     return this.#askDecoded(this.#message(name, values), decodeWord);
   }
@@ -105,8 +111,8 @@ export class ScpiConversation {
   }
 
   /** `count` numbers in the agreed form. Throws ANALYZER_BAD_BLOCK or ANALYZER_BAD_ANSWER for another count. */
-  async askNumbers(name: TemplateName, count: number): Promise<Float64Array> {
-    const message = this.#message(name, {});
+  async askNumbers(name: TemplateName, count: number, values: Substitutions = {}): Promise<Float64Array> {
+    const message = this.#message(name, values);
     const numbers = await this.#askNumbers(message, count);
     if (numbers.length === count) return numbers;
     throw new DriverError(

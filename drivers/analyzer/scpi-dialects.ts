@@ -1,15 +1,18 @@
 // Command shapes of analyzers as data. A dialect is a table of templates, named by how S-parameters are
 // chosen; everything else in this folder is common to all. A template is one message without line end
-// (or a list of messages, for commands that take several); a query ends in a question mark.
+// (or a list of messages, for commands that take several); a query has a question mark.
 //
-// Placeholders: {channel} the channel's number · {value} a number · {onOff} ON or OFF · {count} a number
-// of parameters · {trace} number of a trace, from 1 · {parameter} S11, S21, S12 or S22.
+// Placeholders: {channel} the channel's number · {value} a number · {onOff} ON or OFF, {oneZero} 1 or 0 ·
+// {count} a number of parameters · {trace} number of a trace, from 1 · {parameter} S11, S21, S12 or S22.
 import { DriverError } from '../errors.ts';
+import { namedMeasurement } from './dialects/named-measurement.ts';
+import { numberedParameter } from './dialects/numbered-parameter.ts';
+import { selectedTrace } from './dialects/selected-trace.ts';
 
 export type ScpiTemplate = string | readonly string[];
 
 /** Commands and queries without which nothing can be measured. */
-export const requiredTemplates = [
+const requiredTemplates = [
   'startFrequency',
   'startFrequencyQuery',
   'stopFrequency',
@@ -26,13 +29,12 @@ export const requiredTemplates = [
   'startSweep',
   'abort',
   'parameterDefine',
-  'parameterSelect',
   'dataQuery',
   'errorQuery',
 ] as const;
 
 /** What an instrument may do without: fixed, computed, or simply not asked. */
-export const optionalTemplates = [
+const optionalTemplates = [
   'averagingState',
   'averagingStateQuery',
   'averagingCount',
@@ -44,9 +46,12 @@ export const optionalTemplates = [
   'sweepTypeQuery',
   'continuousQuery',
   'triggerImmediate',
+  'parameterClear',
   'parameterCount',
   'parameterCountQuery',
   'parameterDefineQuery',
+  'parameterListQuery',
+  'parameterSelect',
   'frequencyAxisQuery',
   'sweepTimeQuery',
   'formatReal64',
@@ -61,13 +66,27 @@ export const optionalTemplates = [
   'correctionDateQuery',
 ] as const;
 
-export type RequiredTemplate = (typeof requiredTemplates)[number];
-export type OptionalTemplate = (typeof optionalTemplates)[number];
+type RequiredTemplate = (typeof requiredTemplates)[number];
+type OptionalTemplate = (typeof optionalTemplates)[number];
 export type TemplateName = RequiredTemplate | OptionalTemplate;
+
+export const templateNames: readonly TemplateName[] = [...requiredTemplates, ...optionalTemplates];
 
 export type ScpiTemplates = Readonly<
   Record<RequiredTemplate, ScpiTemplate> & Partial<Record<OptionalTemplate, ScpiTemplate>>
 >;
+
+/**
+ * How the end of a sweep is known. `operation-complete-bit`: *OPC, then *ESR? until its bit 0; `poll`: a query
+ * until it answers the word or number `until`; `wait`: the stated time of the sweep times `factor`, and some more.
+ */
+export type Completion =
+  | { readonly by: 'operation-complete-bit' }
+  | { readonly by: 'poll'; readonly query: string; readonly until: string }
+  | { readonly by: 'wait'; readonly factor: number };
+
+/** What the instrument sends for each point of a trace, in this order. */
+export type TraceColumn = 'frequency' | 're' | 'im';
 
 export interface ScpiDialect {
   readonly name: string;
@@ -78,6 +97,8 @@ export interface ScpiDialect {
    * `whole-average`: the instrument sweeps N times by itself. Without meaning where it averages by point.
    */
   readonly oneStartRuns: 'one-sweep' | 'whole-average';
+  readonly completion: Completion;
+  readonly columns: readonly TraceColumn[];
   /**
    * Optional commands that an instrument may refuse as unknown (−113) without harm, and optional queries that
    * are left out once it has: what they would have confirmed is then proven otherwise, or taken as sent.
@@ -85,74 +106,7 @@ export interface ScpiDialect {
   readonly mayBeUnknown: readonly TemplateName[];
 }
 
-/**
- * S-parameters by number of a trace: their count is set, each is defined, and data are read of the
- * selected one. Averaging is asked for by point, for then one start means one thing everywhere; where the
- * instrument averages whole sweeps only, one start is taken to run one of them: were it the whole average,
- * N starts would only cost time, whereas one too few would pass an unfinished average off as a finished one.
- */
-const numberedParameter: ScpiDialect = {
-  name: 'numbered-parameter',
-  channel: 1,
-  oneStartRuns: 'one-sweep',
-  mayBeUnknown: [
-    'triggerImmediate',
-    'sweepTypeLinear',
-    'averagingByPoint',
-    'averagingModeQuery',
-    'sweepTimeQuery',
-    'frequencyAxisQuery',
-    'continuousQuery',
-    'byteOrderQuery',
-    'correctionQuery',
-  ],
-  templates: {
-    startFrequency: ':SENS{channel}:FREQ:STAR {value}',
-    startFrequencyQuery: ':SENS{channel}:FREQ:STAR?',
-    stopFrequency: ':SENS{channel}:FREQ:STOP {value}',
-    stopFrequencyQuery: ':SENS{channel}:FREQ:STOP?',
-    points: ':SENS{channel}:SWE:POIN {value}',
-    pointsQuery: ':SENS{channel}:SWE:POIN?',
-    ifBandwidth: ':SENS{channel}:BAND {value}',
-    ifBandwidthQuery: ':SENS{channel}:BAND?',
-    power: ':SOUR{channel}:POW {value}',
-    powerQuery: ':SOUR{channel}:POW?',
-    output: ':OUTP {onOff}',
-    outputQuery: ':OUTP?',
-    continuousOff: ':INIT{channel}:CONT OFF',
-    continuousQuery: ':INIT{channel}:CONT?',
-    startSweep: ':INIT{channel}',
-    abort: ':ABOR',
-    averagingState: ':SENS{channel}:AVER {onOff}',
-    averagingStateQuery: ':SENS{channel}:AVER?',
-    averagingCount: ':SENS{channel}:AVER:COUN {value}',
-    averagingCountQuery: ':SENS{channel}:AVER:COUN?',
-    averagingClear: ':SENS{channel}:AVER:CLE',
-    averagingByPoint: ':SENS{channel}:AVER:MODE POIN',
-    averagingModeQuery: ':SENS{channel}:AVER:MODE?',
-    sweepTypeLinear: ':SENS{channel}:SWE:TYPE LIN',
-    triggerImmediate: ':TRIG:SOUR IMM',
-    sweepTimeQuery: ':SENS{channel}:SWE:TIME?',
-    parameterCount: ':CALC{channel}:PAR:COUN {count}',
-    parameterCountQuery: ':CALC{channel}:PAR:COUN?',
-    parameterDefine: ':CALC{channel}:PAR{trace}:DEF {parameter}',
-    parameterDefineQuery: ':CALC{channel}:PAR{trace}:DEF?',
-    parameterSelect: ':CALC{channel}:PAR{trace}:SEL',
-    dataQuery: ':CALC{channel}:DATA? SDATA',
-    frequencyAxisQuery: ':CALC{channel}:X?',
-    formatReal64: ':FORM REAL,64',
-    formatReal32: ':FORM REAL,32',
-    formatAscii: ':FORM ASC',
-    formatQuery: ':FORM?',
-    byteOrderNormal: ':FORM:BORD NORM',
-    byteOrderSwapped: ':FORM:BORD SWAP',
-    byteOrderQuery: ':FORM:BORD?',
-    correctionQuery: ':SENS{channel}:CORR?',
-    errorQuery: ':SYST:ERR?',
-  },
-};
-
-const builtIn: readonly ScpiDialect[] = [numberedParameter];
+const builtIn: readonly ScpiDialect[] = [numberedParameter, namedMeasurement, selectedTrace];
 
 /** The built-in dialects' names, for checks of files and for help. */
 export const dialectNames: readonly string[] = builtIn.map(({ name }) => name);
@@ -173,7 +127,7 @@ export function withoutQuery(dialect: ScpiDialect, message: string): ScpiDialect
   const name = dialect.mayBeUnknown.find((each) => {
     const template = dialect.templates[each];
     if (!each.endsWith('Query') || template === undefined) return false;
-    return fillTemplate(template, { channel: dialect.channel })[0] === message;
+    return fillTemplate(template, { channel: dialect.channel, trace: 1 })[0] === message;
   });
   if (name === undefined) return undefined;
   const { [name]: _, ...templates } = dialect.templates;
@@ -189,8 +143,10 @@ export type Substitutions = Readonly<Record<string, string | number>>;
  */
 export function fillTemplate(template: ScpiTemplate, substitutions: Substitutions): string[] {
   const templates = typeof template === 'string' ? [template] : template;
+  const { onOff } = substitutions;
+  const values = onOff === undefined ? substitutions : { ...substitutions, oneZero: onOff === 'ON' ? 1 : 0 };
   return templates.map((one) => {
-    const message = one.replace(/\{(\w*)\}/g, (_, name: string) => substitute(one, name, substitutions));
+    const message = one.replace(/\{(\w*)\}/g, (_, name: string) => substitute(one, name, values));
     checkMessage(message);
     return message;
   });
@@ -224,37 +180,66 @@ export function checkMessage(message: string): void {
   );
 }
 
-/** What is wrong with a dialect, in sentences; empty when it can be used. For files and constructors. */
+/** What is wrong with a dialect, in sentences; empty when it can be used. For constructors. */
 export function problemsOf(dialect: ScpiDialect): string[] {
   const templates: Readonly<Record<string, ScpiTemplate | undefined>> = dialect.templates;
-  const known = new Set<string>([...requiredTemplates, ...optionalTemplates]);
+  const known = new Set<string>(templateNames);
   const problems = requiredTemplates
     .filter((name) => templates[name] === undefined)
     .map((name) => `'${name}' is missing`);
   for (const [name, template] of Object.entries(templates)) {
     if (!known.has(name)) problems.push(`'${name}' is no template`);
-    else if (template !== undefined) problems.push(...problemsOfTemplate(name, template));
+    else if (template !== undefined) {
+      const problem = problemOfTemplate(name as TemplateName, template);
+      if (problem !== undefined) problems.push(`'${name}' ${problem}`);
+    }
   }
   return problems;
 }
 
-const sampleValues: Substitutions = {
-  channel: 1,
-  value: 1,
-  onOff: 'ON',
-  count: 1,
-  trace: 1,
-  parameter: 'S21',
-};
+/** One value for every placeholder that the template of this name may have. */
+function sampleValues(name: TemplateName): Substitutions {
+  if (name === 'output' || name === 'averagingState') return { channel: 1, onOff: 'ON' };
+  if (name === 'parameterCount') return { channel: 1, count: 1 };
+  if (name === 'frequencyAxisQuery' || name === 'parameterDefineQuery') return { channel: 1, trace: 1 };
+  if (name === 'dataQuery' || name === 'parameterDefine' || name === 'parameterSelect') {
+    return { channel: 1, trace: 1, parameter: 'S21' };
+  }
+  return valueTemplates.has(name) ? { channel: 1, value: 1 } : { channel: 1 };
+}
 
-function problemsOfTemplate(name: string, template: ScpiTemplate): string[] {
+const valueTemplates: ReadonlySet<TemplateName> = new Set([
+  'startFrequency',
+  'stopFrequency',
+  'points',
+  'ifBandwidth',
+  'power',
+  'averagingCount',
+]);
+
+/** What is wrong with one template, after its name; undefined when it can be used. */
+export function problemOfTemplate(name: TemplateName, template: ScpiTemplate): string | undefined {
+  const values = sampleValues(name);
   try {
-    const messages = fillTemplate(template, sampleValues);
+    const messages = fillTemplate(template, values);
     const asks = messages.filter((message) => message.includes('?')).length;
-    if (name.endsWith('Query') ? asks === 1 && messages.length === 1 : asks === 0) return [];
-    return [`'${name}' must ${name.endsWith('Query') ? 'be one query' : 'ask nothing'}`];
+    if (name.endsWith('Query') ? asks !== 1 || messages.length !== 1 : asks > 0 || messages.length === 0) {
+      return `must ${name.endsWith('Query') ? 'be one query' : 'ask nothing'}`;
+    }
   } catch (error) {
-    if (error instanceof DriverError) return [`'${name}': ${error.message}`];
+    if (error instanceof DriverError) return `cannot be sent: ${error.message}`;
     throw error;
   }
+  const needed = neededPlaceholders(values);
+  const text = typeof template === 'string' ? template : template.join(' ');
+  const isFilled = needed.length === 0 || needed.some((each) => text.includes(`{${each}}`));
+  return isFilled || name === 'frequencyAxisQuery' || name === 'dataQuery'
+    ? undefined
+    : `must contain {${needed.join('} or {')}}`;
+}
+
+/** A setting that does not say its value sets nothing. */
+function neededPlaceholders(values: Substitutions): string[] {
+  if (values['onOff'] !== undefined) return ['onOff', 'oneZero'];
+  return Object.keys(values).filter((each) => each !== 'channel');
 }

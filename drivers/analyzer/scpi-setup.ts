@@ -106,6 +106,7 @@ async function applySweep(talk: ScpiConversation, setup: SweepSetup): Promise<vo
 }
 
 async function applyParameters(talk: ScpiConversation, { parameters }: SweepSetup): Promise<void> {
+  await talk.tell('parameterClear');
   await talk.tell('parameterCount', { count: parameters.length });
   for (const [index, parameter] of parameters.entries()) {
     await talk.tell('parameterDefine', { trace: index + 1, parameter });
@@ -158,7 +159,7 @@ export function requireSetting(
 async function confirmModes(talk: ScpiConversation, { averages }: SweepSetup): Promise<void> {
   const { format, byteOrder } = talk.traceForm;
   if (talk.has('continuousQuery')) {
-    requireSetting('continuous sweep', false, await talk.askBoolean('continuousQuery'));
+    requireSetting('continuous sweep', false, await talk.askContinuous());
   }
   if (talk.has('sweepTypeQuery')) {
     requireSetting('sweep type', 'LIN', (await talk.askWord('sweepTypeQuery')).slice(0, 3));
@@ -228,7 +229,11 @@ export async function confirmGrid(
 
 /** The axis as the instrument reports it, compared point by point; also shows a wrong byte order. */
 export async function confirmAxis(talk: ScpiConversation, frequenciesHz: Float64Array): Promise<void> {
-  const axis = await talk.askNumbers('frequencyAxisQuery', frequenciesHz.length);
+  requireAxis(frequenciesHz, await talk.askNumbers('frequencyAxisQuery', frequenciesHz.length, { trace: 1 }));
+}
+
+/** Throws ANALYZER_SETTING_DIFFERS unless each point of `axis` is the one of the setup. */
+export function requireAxis(frequenciesHz: Float64Array, axis: Float64Array): void {
   for (const [index, asked] of frequenciesHz.entries()) {
     requireSetting(`frequency of point ${index + 1} (Hz)`, asked, axis[index]!, asked * axisTolerance);
   }
@@ -256,6 +261,10 @@ function estimatedSweepMs({ points, ifBandwidthHz }: SweepSetup): number {
 async function confirmParameters(talk: ScpiConversation, { parameters }: SweepSetup): Promise<void> {
   if (talk.has('parameterCountQuery')) {
     requireSetting('number of S-parameters', parameters.length, await talk.askNumber('parameterCountQuery'));
+  }
+  if (talk.has('parameterListQuery')) {
+    const list = (await talk.askWord('parameterListQuery')).match(/\bS[12][12]\b/g) ?? [];
+    requireSetting('S-parameters', parameters.toSorted().join(), list.toSorted().join());
   }
   if (!talk.has('parameterDefineQuery')) return;
   for (const [index, parameter] of parameters.entries()) {

@@ -47,9 +47,13 @@ export function decodeStated(text: string): number | undefined {
   return Number.isFinite(value) ? value : undefined;
 }
 
-/** A list with commas, white space around them allowed. Throws ANALYZER_BAD_ANSWER. */
+/**
+ * A list with commas, white space around them allowed; without any comma, with semicolons or white space.
+ * Throws ANALYZER_BAD_ANSWER.
+ */
 export function decodeNumberList(text: string): Float64Array {
-  return Float64Array.from(text.split(','), decodeNumber);
+  const parts = text.includes(',') ? text.split(',') : text.trim().split(/\s*;\s*|\s+/);
+  return Float64Array.from(parts, decodeNumber);
 }
 
 /** `1`, `0`, `ON`, `OFF` and their like. Throws ANALYZER_BAD_ANSWER. */
@@ -62,6 +66,13 @@ export function decodeBoolean(text: string): boolean {
   throw new DriverError('ANALYZER_BAD_ANSWER', `'${excerpt(text)}' is neither on nor off`, {
     answer: excerpt(text),
   });
+}
+
+/** Like decodeBoolean, and `HOLD`, `SING…` for off, `CONT…` for on. Throws ANALYZER_BAD_ANSWER. */
+export function decodeContinuous(text: string): boolean {
+  const word = decodeWord(text);
+  if (word === 'HOLD' || word.startsWith('SING')) return false;
+  return word.startsWith('CONT') || decodeBoolean(text);
 }
 
 /** A word or string answer in one form: upper case, without quotes, without white space. */

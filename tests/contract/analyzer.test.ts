@@ -3,6 +3,7 @@
 // recovery, never in a wrong trace and never in silence.
 import { afterEach, describe, expect, it } from 'vitest';
 import type { Acquisition, Analyzer, SParameter, SweepSetup } from '../../drivers/analyzer/analyzer.ts';
+import { dialectNamed } from '../../drivers/analyzer/scpi-dialects.ts';
 import { DriverError } from '../../drivers/errors.ts';
 import { faults } from '../../mocks/faults/fault-table.ts';
 import type { SceneDescription } from '../../mocks/scene/scene-description.ts';
@@ -40,24 +41,39 @@ afterEach(async () => {
   for (const at of open.splice(0)) await at.close();
 });
 
+/** Every wire with the first dialect, and every other dialect on one wire of each kind. */
+const dialects = ['numbered-parameter', 'named-measurement', 'selected-trace'] as const;
+interface Meeting extends Wire {
+  dialect: (typeof dialects)[number];
+}
+const meetings: readonly Meeting[] = dialects.flatMap((dialect, i) =>
+  wires
+    .filter(({ name }) => i === 0 || name === 'memory' || name === 'sockets')
+    .map((wire) => ({ ...wire, name: i === 0 ? wire.name : `${wire.name}, ${dialect}`, dialect })),
+);
+
 interface Rig {
   at: ReachableBench;
   analyzer: Analyzer;
 }
 
 async function rigOn(
-  wire: Wire,
+  wire: Meeting,
   scene: SceneDescription,
   options: Parameters<typeof analyzerOn>[1] = {},
 ): Promise<Rig> {
-  const at = await wire.reach({ scene, positioner: stage });
-  const analyzer = analyzerOn(at, options);
+  const at = await wire.reach({ scene, positioner: stage, analyzer: { commandTree: wire.dialect } });
+  const analyzer = analyzerOn(at, { dialect: dialectNamed(wire.dialect), ...options });
   open.push(at);
   devices.push(analyzer);
   return { at, analyzer };
 }
 
-async function preparedOn(wire: Wire, scene: SceneDescription, own: Partial<SweepSetup> = {}): Promise<Rig> {
+async function preparedOn(
+  wire: Meeting,
+  scene: SceneDescription,
+  own: Partial<SweepSetup> = {},
+): Promise<Rig> {
   const rig = await rigOn(wire, scene);
   await rig.at.run(rig.analyzer.identify());
   await rig.at.run(rig.analyzer.prepare({ ...setup, ...own }));
@@ -128,7 +144,7 @@ const formats = [
   { traceFormat: 'ascii', relative: 0.5e-11 },
 ] as const;
 
-describe.each(wires)('an analyzer over $name', (wire) => {
+describe.each(meetings)('an analyzer over $name', (wire) => {
   it('says who it is', async () => {
     const { at, analyzer } = await rigOn(wire, silent);
     expect(await at.run(analyzer.identify())).toEqual({
@@ -374,8 +390,8 @@ function expectTrue(at: ReachableBench, acquired: Acquisition, name: string, whe
 }
 
 /** How many answers a session has when nothing strikes, counted on the wire in memory. */
-async function answersOfASession(): Promise<number> {
-  const rig = await rigOn(wires[0]!, quiet);
+async function answersOfASession(dialect: Meeting['dialect']): Promise<number> {
+  const rig = await rigOn(meetings.find((meeting) => meeting.dialect === dialect)!, quiet);
   const before = rig.at.bench.instrument.faults;
   let answers = 0;
   rig.at.bench.instrument.faults = {
@@ -390,10 +406,15 @@ async function answersOfASession(): Promise<number> {
 }
 
 /** Sessions that are struck once, each later than the one before; returns the codes of what failed. */
-async function struckSessions(wire: Wire, name: string, stride: number, recovers = true): Promise<string[]> {
+async function struckSessions(
+  wire: Meeting,
+  name: string,
+  stride: number,
+  recovers = true,
+): Promise<string[]> {
   const sockets = wire.kind === 'sockets';
   // A bench that runs ahead is polled less often; and every silence there is waited for in the world's time.
-  const answers = Math.floor((await answersOfASession()) * (sockets ? 0.75 : 1));
+  const answers = Math.floor((await answersOfASession(wire.dialect)) * (sockets ? 0.75 : 1));
   const options = sockets ? { answerTimeoutMs: 1000 } : {};
   const failed: string[] = [];
   for (let after = 1; after <= answers; after += stride) {
@@ -413,7 +434,7 @@ async function struckSessions(wire: Wire, name: string, stride: number, recovers
   return failed;
 }
 
-describe.each(wires.filter((wire) => wire.kind === 'memory'))(
+describe.each(meetings.filter((wire) => wire.kind === 'memory'))(
   'faults of the instrument over $name',
   (wire) => {
     it.each(strikes)('%s: an error with a code or recovery, never a wrong trace', async (name) => {
@@ -429,7 +450,7 @@ describe.each(wires.filter((wire) => wire.kind === 'memory'))(
 );
 
 it('faults of the instrument over sockets: each on a bench of its own', async () => {
-  const sockets = wires.find((wire) => wire.kind === 'sockets')!;
+  const sockets = meetings.find((wire) => wire.kind === 'sockets')!;
   const failed = await Promise.all(strikes.map((name) => struckSessions(sockets, name, 17)));
   for (const [index, name] of strikes.entries()) {
     // Of a bench that runs ahead no answer is too late.
@@ -442,7 +463,7 @@ describe('faults of the instrument at moments of a session', () => {
   for (const name of strikes) {
     it(`${name}: strikes at any time, never a wrong trace`, async () => {
       for (let afterMs = 0.5; afterMs < 60; afterMs += 2.5) {
-        const rig = await rigOn(wires[0]!, { ...quiet, seed: afterMs });
+        const rig = await rigOn(meetings[0]!, { ...quiet, seed: afterMs });
         const { at, analyzer } = rig;
         await at.run(analyzer.identify());
         await at.run(analyzer.prepare(setup));

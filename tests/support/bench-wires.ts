@@ -142,7 +142,7 @@ function randomCutter(seed: number): (bytes: Uint8Array) => Uint8Array[] {
 
 export function analyzerOn(
   at: ReachableBench,
-  options: Partial<Pick<ScpiAnalyzerOptions, 'traceFormat' | 'byteOrder' | 'answerTimeoutMs'>> = {},
+  options: Partial<Omit<ScpiAnalyzerOptions, 'onTraffic'>> = {},
 ): ScpiAnalyzer {
   return new ScpiAnalyzer(at.link('analyzer'), at.clock, {
     dialect: dialectNamed('numbered-parameter'),
