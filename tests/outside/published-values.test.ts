@@ -11,6 +11,7 @@ import {
   powerDb,
   powerRatio,
 } from '../../daemon/pattern/decibels.ts';
+import { lobingHeightM, rippleDb } from '../../daemon/pattern/echo.ts';
 import { extremaOf } from '../../daemon/pattern/extrema.ts';
 import { edgePhaseDeg, farFieldDistanceM, reactiveLimitM } from '../../daemon/pattern/far-field.ts';
 import type { Figure } from '../../daemon/pattern/figure.ts';
@@ -33,8 +34,21 @@ import {
   vswr,
 } from '../../daemon/pattern/match.ts';
 import { lengthScale } from '../../daemon/pattern/match-band.ts';
+import {
+  aliasFreePathM,
+  echoPeriodHz,
+  kaiser6Widening,
+  pathResolutionM,
+} from '../../daemon/pattern/path-resolution.ts';
 import { peakOf } from '../../daemon/pattern/peak.ts';
+import {
+  densityDistanceM,
+  eirpW,
+  fccPublicWM2,
+  icnirpPublicWM2,
+} from '../../daemon/pattern/power-density.ts';
 import { lobesOf } from '../../daemon/pattern/side-lobes.ts';
+import { noiseDbm } from '../../daemon/plan/preflight/link-budget.ts';
 import { notCovered } from './not-covered.ts';
 import {
   cardioid,
@@ -370,6 +384,87 @@ const checks: Record<string, (entry: Entry) => void> = {
       else near(returnLossDb(found), lossDb, tolerance.db);
     }
   },
+  'C-RIPPLE': ({ value, tolerance }) => {
+    for (const [levelDb, maxDb, minDb, peakToPeakDb] of value as number[][]) {
+      const { risesDb, fallsDb } = rippleDb(levelDb!);
+      near(risesDb, maxDb, tolerance, `${levelDb} dB`);
+      near(fallsDb, minDb, tolerance, `${levelDb} dB`);
+      near(risesDb - fallsDb, peakToPeakDb, tolerance, `${levelDb} dB`);
+    }
+  },
+  'C-SNR-AVG': ({ value, tolerance }) => {
+    const floor = { levelDbm: -110, ifBandwidthHz: 1000 };
+    [2, 4, 10, 16, 100].forEach((averages, k) => {
+      near(-110 - noiseDbm(floor, { ifBandwidthHz: 1000, averages }), value[k], tolerance, `${averages}`);
+    });
+  },
+  'E-FCC-PTS': ({ value, tolerance }) => {
+    for (const [mhz, generalWM2] of value as number[][]) {
+      near(fccPublicWM2(mhz! * 1e6), generalWM2, tolerance, `${mhz} MHz`);
+    }
+  },
+  'E-ICNIRP-PTS': ({ value, tolerance }) => {
+    for (const [mhz, generalWM2] of value as number[][]) {
+      near(icnirpPublicWM2(mhz! * 1e6), generalWM2, tolerance, `${mhz} MHz`);
+    }
+  },
+  'E-DIST': ({ value, tolerance }) => {
+    for (const [mhz, powerW, gainDbi, radiatedW, ...distancesM] of value as number[][]) {
+      const found = eirpW(powerDb(powerW!) + 30, gainDbi!);
+      // Printed to six digits.
+      near(found / radiatedW!, 1, 1e-5, `${mhz} MHz, EIRP`);
+      const [fcc, fccOccupational] = publishedRow('E-FCC-PTS', mhz!);
+      const [icnirp, icnirpOccupational] = publishedRow('E-ICNIRP-PTS', mhz!);
+      const expected = [
+        densityDistanceM(found, fcc!),
+        densityDistanceM(found, fccOccupational!),
+        densityDistanceM(found, icnirp!),
+        densityDistanceM(found, icnirpOccupational!),
+        densityDistanceM(found, fcc!, 2.56),
+        densityDistanceM(found, fcc!, 4),
+      ];
+      expect(distancesM).toHaveLength(expected.length);
+      expected.forEach((distanceM, k) => {
+        near(distanceM, distancesM[k], tolerance, `${mhz} MHz, column ${k}`);
+      });
+    }
+  },
+  'E-OET-FACTOR': ({ value, tolerance }) => {
+    for (const [factor, db] of value as number[][]) {
+      const more = (densityDistanceM(1, 1, factor) / densityDistanceM(1, 1)) ** 2;
+      near(more, factor, tolerance);
+      near(powerDb(more), db, tolerance);
+    }
+  },
+  'E-OET-EX': ({ value, tolerance, inputs }) => {
+    const meanDbm = powerDb(inputs.power_w * inputs.duty) + 30;
+    near(densityDistanceM(eirpW(meanDbm, inputs.gain_dbi), inputs.limit_w_m2), value, tolerance);
+  },
+  'G-KAISER-MET': ({ value, tolerance }) => {
+    const width = (beta: number): number => (value as number[][]).find((row) => row[0] === beta)![1]!;
+    near(kaiser6Widening, width(6) / width(0), tolerance.bins);
+  },
+  'G-RES': ({ value, tolerance }) => {
+    for (const [mhz, pathM] of value as number[][]) {
+      near(pathResolutionM(mhz! * 1e6), pathM, pathM! * tolerance.rel, `${mhz} MHz`);
+    }
+  },
+  'G-ALIAS': ({ value, tolerance }) => {
+    for (const [spanMhz, points, stepMhz, pathM] of value as number[][]) {
+      near(spanMhz! / (points! - 1), stepMhz, stepMhz! * tolerance.rel);
+      near(aliasFreePathM((spanMhz! * 1e6) / (points! - 1)), pathM, pathM! * tolerance.rel, `${points}`);
+    }
+  },
+  'G-ECHO-PERIOD': ({ value, tolerance }) => {
+    [0.5, 1, 3, 10].forEach((excessM, k) => {
+      near(echoPeriodHz(excessM) / 1e6, value[k], tolerance, `${excessM} m`);
+    });
+  },
+  'I-HEIGHT': ({ value, tolerance }) => {
+    for (const [sourceM, rangeM, nullM] of value as number[][]) {
+      near(lobingHeightM(868e6, rangeM!, sourceM!), nullM, tolerance);
+    }
+  },
   'I-MINUS3': ({ value, tolerance }) => {
     near(powerRatio(-3), value[0], tolerance);
     near(powerDb(0.5), value[1], tolerance);
@@ -429,6 +524,12 @@ describe('published values', () => {
     }
   });
 });
+
+/** The limits of a published table at one of its frequencies. */
+function publishedRow(id: string, mhz: number): number[] {
+  const rows = entries.find((entry) => entry.id === id)!.value as number[][];
+  return rows.find((row) => row[0] === mhz)!.slice(1);
+}
 
 function numberOf(figure: Figure): number {
   expect(figure.kind, JSON.stringify(figure)).toBe('value');
