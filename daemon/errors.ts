@@ -20,6 +20,8 @@ export const daemonErrorCodes = [
   'PATTERN_BAD_INPUT',
   'RUN_INTERRUPTED',
   'RUN_GAVE_UP',
+  'RUN_NOT_RESUMABLE',
+  'RANGE_HELD',
   'DEFECT',
 ] as const;
 
@@ -61,7 +63,7 @@ export interface Advice {
   exitCode: ExitCode;
 }
 
-const { badInput, hardware, interrupted, archive, defect } = exitCodes;
+const { badInput, hardware, interrupted, rangeHeld, archive, defect } = exitCodes;
 
 export const adviceTable: Readonly<Record<ErrorCode, Advice>> = {
   LINK_OPEN_FAILED: {
@@ -220,7 +222,7 @@ export const adviceTable: Readonly<Record<ErrorCode, Advice>> = {
   },
   POSITIONER_STOPPED: {
     meaning: 'The motion was stopped on request.',
-    nextStep: 'Nothing moves. Measure again when ready.',
+    nextStep: 'Nothing moves. Go on with `nightcut resume` when ready.',
     exitCode: interrupted,
   },
   POSITIONER_STOP_UNCONFIRMED: {
@@ -297,13 +299,24 @@ export const adviceTable: Readonly<Record<ErrorCode, Advice>> = {
   },
   RUN_INTERRUPTED: {
     meaning: 'The run was stopped before its end; what was announced is safe in the archive.',
-    nextStep: 'Measure again when ready.',
+    nextStep: 'Go on with `nightcut resume` when ready.',
     exitCode: interrupted,
   },
   RUN_GAVE_UP: {
     meaning: 'The same position failed again and again; the run ended safely.',
-    nextStep: 'The cause is in the message and in the log; clear it and measure again.',
+    nextStep: 'The cause is in the message and in the log; clear it and go on with `nightcut resume`.',
     exitCode: hardware,
+  },
+  RUN_NOT_RESUMABLE: {
+    meaning:
+      'There is no run that could go on, or it does not fit the range as it stands now; nothing moved.',
+    nextStep: 'List the runs with `nightcut runs`; measure anew where the range has changed.',
+    exitCode: badInput,
+  },
+  RANGE_HELD: {
+    meaning: 'Another process drives this device.',
+    nextStep: 'Wait for it to end, or stop it, then measure again.',
+    exitCode: rangeHeld,
   },
   DEFECT: {
     meaning: 'A defect of ours.',

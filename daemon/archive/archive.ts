@@ -81,8 +81,11 @@ export interface SetupRecord {
   calibration: { correctionOn: boolean; interpolated?: boolean; date?: string };
 }
 
-/** `cut`: part of a cut; `tie`: boresight or flank revisited; `closure`: the end of a full turn, again. */
-export type SamplePurpose = 'cut' | 'tie' | 'closure' | 'reference';
+/**
+ * `cut`: part of a cut; `tie`: boresight or flank revisited; `closure`: the end of a full turn, again;
+ * `repeat`: a position of an interrupted run once more, to compare.
+ */
+export type SamplePurpose = 'cut' | 'tie' | 'closure' | 'reference' | 'repeat';
 
 /** Where the axes were at a moment of the segment's clock. One entry at rest, many in motion. */
 export interface TrackPoint {

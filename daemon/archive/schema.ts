@@ -60,7 +60,7 @@ CREATE TABLE sample (
   segment INTEGER NOT NULL,
   setup INTEGER NOT NULL,
   points INTEGER NOT NULL,
-  purpose TEXT NOT NULL CHECK (purpose IN ('cut', 'tie', 'closure', 'reference')),
+  purpose TEXT NOT NULL CHECK (purpose IN ('cut', 'tie', 'closure', 'reference', 'repeat')),
   cut TEXT NOT NULL,
   target_json TEXT NOT NULL CHECK (json_valid(target_json)),
   axis TEXT NOT NULL,

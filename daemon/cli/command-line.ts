@@ -2,7 +2,9 @@
 // exit code. Each command group has its own file.
 import { Command, CommanderError } from 'commander';
 import { adviceOf, codeOf, DaemonError, type ExitCode, exitCodes } from '../errors.ts';
+import { addCheckCommand } from './check.ts';
 import { addMeasureCommand } from './measure.ts';
+import { addResumeCommand } from './resume.ts';
 import { addRunsCommands } from './runs.ts';
 import type { Finish, Surroundings } from './surroundings.ts';
 
@@ -22,7 +24,9 @@ export async function runCommandLine(args: readonly string[], outside: Surroundi
       writeOut: (text) => outside.stdout.write(text),
       writeErr: () => {},
     });
+  addCheckCommand(program, outside, finish);
   addMeasureCommand(program, outside, finish);
+  addResumeCommand(program, outside, finish);
   addRunsCommands(program, outside, finish);
   for (const command of program.commands) command.exitOverride().copyInheritedSettings(program);
   try {

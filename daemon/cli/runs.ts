@@ -98,7 +98,7 @@ export async function printRun(
   outside.stdout.write(options.json ? `${JSON.stringify(document)}\n` : renderFigures(document));
 }
 
-function runNumber(text: string): number {
+export function runNumber(text: string): number {
   if (!/^[1-9]\d{0,8}$/.test(text)) {
     throw new DaemonError('USAGE_WRONG', `expected the number of a run, such as 3; found '${text}'`);
   }

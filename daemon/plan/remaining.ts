@@ -12,7 +12,8 @@ export type StoredSample = Pick<SampleRecord, 'purpose' | 'cut' | 'angleDeg'>;
 export function remaining(planned: readonly PlannedStep[], stored: readonly StoredSample[]): PlannedStep[] {
   const taken = new Map<string, number>();
   for (const sample of stored) {
-    if (sample.purpose !== 'tie') taken.set(keyOf(sample), (taken.get(keyOf(sample)) ?? 0) + 1);
+    if (sample.purpose !== 'tie' && sample.purpose !== 'repeat')
+      taken.set(keyOf(sample), (taken.get(keyOf(sample)) ?? 0) + 1);
   }
   const isLeft = planned.map((step) => {
     const count = taken.get(keyOf(step)) ?? 0;

@@ -2,7 +2,7 @@
 // home switch has nothing but that count: if the controller was restarted or somebody turned the mast in
 // between, travel and cable wrap would be measured from a false zero. Motion by hand in between is not seen.
 import { DriverError } from '../../drivers/errors.ts';
-import type { AxisSetup, Position, Positioner } from '../../drivers/positioner/positioner.ts';
+import type { Position, Positioner } from '../../drivers/positioner/positioner.ts';
 import type { Archive } from '../archive/archive.ts';
 
 /** Kind of the archive's event that holds where the axes came to rest. */
@@ -39,9 +39,13 @@ export async function restNow(positioner: Positioner): Promise<{ position: Posit
   }
 }
 
-/** Throws POSITIONER_REFERENCE_LOST for an axis without a home switch that is not where it was left. */
-export function checkUntouched(axes: readonly AxisSetup[], rest: AxisRest, now: Position): void {
-  for (const axis of axes) {
+/**
+ * Throws POSITIONER_REFERENCE_LOST for an axis without a home switch that is not where it was left. A count
+ * that the controller has kept since is true wherever it stands.
+ */
+export function checkUntouched(positioner: Positioner, rest: AxisRest, now: Position): void {
+  if (rest.known && positioner.countUnbroken) return;
+  for (const axis of positioner.axes) {
     if (axis.homing !== 'none') continue;
     const left = rest.position[axis.name];
     const counted = now[axis.name] ?? 0;

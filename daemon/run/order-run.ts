@@ -1,5 +1,6 @@
 // Range file and plan → the order a run executes. What the files alone can tell is checked first, so that
 // a wrong plan is refused before an archive is opened or a device spoken to; the gain reference comes next.
+import type { SParameter, SweepSetup } from '../../drivers/analyzer/analyzer.ts';
 import type { Archive } from '../archive/archive.ts';
 import { DaemonError } from '../errors.ts';
 import type { Plan } from '../files/plan-file.ts';
@@ -40,11 +41,7 @@ export function orderRun(range: RangeFile, plan: Plan): OrderDraft {
           rangeFile: range,
           ...(gainReference ? { gainReference } : {}),
         },
-        sweep: {
-          ...plan.band,
-          ...plan.analyzer,
-          parameters: range.analyzer.autPort === 1 ? ['S21', 'S11'] : ['S21', 'S22'],
-        },
+        sweep: sweepOf(range, plan),
         steps,
         motionMs: predictStepsMs(steps, axes, 0),
         boresight: Object.fromEntries(axes.map((axis) => [axis.name, axis.boresightDeg])),
@@ -53,6 +50,12 @@ export function orderRun(range: RangeFile, plan: Plan): OrderDraft {
       };
     },
   };
+}
+
+/** Both the transmission and the match of the AUT are recorded in every sweep; a sample reads what it needs. */
+export function sweepOf(range: RangeFile, plan: Plan): SweepSetup {
+  const parameters: SParameter[] = range.analyzer.autPort === 1 ? ['S21', 'S11'] : ['S21', 'S22'];
+  return { ...plan.band, ...plan.analyzer, parameters };
 }
 
 /** A reference run from which no gain could be taken is refused before a night is spent on it. */

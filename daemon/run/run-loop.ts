@@ -17,6 +17,7 @@ import type { PlannedStep } from '../plan/expand.ts';
 import { type AxisRest, checkUntouched, restEvent, restNow } from './axis-rest.ts';
 import type { Device, RunEvent } from './events.ts';
 import { from, measurePosition, type PositionTools, StepFailure } from './measure-position.ts';
+import { medianDifferenceDb } from './repeat-check.ts';
 import { reactionTo, segmentsPerRun, triesPerPosition, waitBeforeRetryMs } from './retry-table.ts';
 import { type Bench, safeStop } from './safe-stop.ts';
 import { type Connected, connect, openSegment, type SegmentTools, waitForDevice } from './segments.ts';
@@ -34,6 +35,17 @@ export interface RunOrder {
   lastRest?: AxisRest;
   /** The analyzer port of the AUT. */
   autPort: 1 | 2;
+  /** Where an interrupted run goes on; absent for a new one. */
+  resume?: ResumePoint;
+}
+
+export interface ResumePoint {
+  run: RunRef;
+  /** Segments and samples it has already. */
+  segments: number;
+  samples: number;
+  /** Its last positions, to be taken again and compared. */
+  repeats: readonly { step: PlannedStep; trace: Float64Array }[];
 }
 
 export interface RunOutcome {
@@ -72,6 +84,11 @@ export class RunLoop {
     this.#archive = archive;
     this.#clock = clock;
     this.#order = order;
+    if (order.resume) {
+      this.#segment = order.resume.segments;
+      this.#sequence = order.resume.samples;
+      this.#due = { reason: 'resumed', away: new Set() };
+    }
     this.#tools = { bench, archive, clock, tell: (event) => this.#tell(event) };
   }
 
@@ -87,16 +104,14 @@ export class RunLoop {
    */
   async execute(signal: AbortSignal): Promise<RunOutcome> {
     try {
-      this.#connected = await connect(this.#bench, this.#order.sweep, signal);
+      const isReturn = this.#order.resume !== undefined;
+      this.#connected = await connect(this.#bench, this.#clock, this.#order.sweep, isReturn, signal);
       await this.#checkUntouched(signal);
     } catch (error) {
       await safeStop(this.#bench);
       throw causeOf(error, signal);
     }
-    const clock = this.#clock;
-    const run = await clock.whileReal(
-      this.#archive.createRun({ ...this.#order.record, startedWallMs: clock.wallMs() }),
-    );
+    const run = this.#order.resume?.run ?? (await this.#createRun());
     this.#run = run;
     let error: unknown;
     try {
@@ -112,13 +127,18 @@ export class RunLoop {
     return this.#end(run, error, unconfirmed);
   }
 
+  #createRun(): Promise<RunRef> {
+    const startedWallMs = this.#clock.wallMs();
+    return this.#clock.whileReal(this.#archive.createRun({ ...this.#order.record, startedWallMs }));
+  }
+
   /** Before anything moves: axes without a home switch must be where the last run left them. */
   async #checkUntouched(signal: AbortSignal): Promise<void> {
     const { lastRest } = this.#order;
     const { positioner } = this.#bench;
     if (!lastRest || positioner.axes.every((axis) => axis.homing === 'switch')) return;
     const now = await from('positioner', positioner.readPosition(signal));
-    checkUntouched(positioner.axes, lastRest, now);
+    checkUntouched(positioner, lastRest, now);
   }
 
   async #measure(run: RunRef, connected: Connected, signal: AbortSignal): Promise<void> {
@@ -212,7 +232,8 @@ export class RunLoop {
    */
   async #openDueSegment(due: DueSegment, step: PlannedStep, signal: AbortSignal): Promise<boolean> {
     const { run, connected } = this.#open();
-    if (this.#segment >= segmentsPerRun) {
+    const mayHaveMoved = this.#segment > 0;
+    if (this.#segment - (this.#order.resume?.segments ?? 0) >= segmentsPerRun) {
       throw new DaemonError('RUN_GAVE_UP', `${this.#segment} interruptions in one run`, {
         reason: due.reason,
       });
@@ -222,7 +243,6 @@ export class RunLoop {
       due.away.delete(device);
     }
     await this.#durable();
-    const isFirst = this.#segment === 0;
     this.#segment += 1;
     await this.#note('segment', due.reason, { segment: this.#segment });
     await openSegment(this.#tools, run.number, this.#segment, due.reason, connected, signal);
@@ -230,8 +250,20 @@ export class RunLoop {
       const tie: PlannedStep = { ...step, purpose: 'tie', angleDeg: 0, target: this.#order.boresight };
       await this.#store(await this.#sample(tie, 1, true, signal));
     }
+    if (due.reason === 'resumed') await this.#repeatLast(signal);
     this.#due = undefined;
-    return !isFirst;
+    return mayHaveMoved;
+  }
+
+  /** The last positions before the interruption once more: what they differ by is told and kept. */
+  async #repeatLast(signal: AbortSignal): Promise<void> {
+    for (const { step, trace } of this.#order.resume?.repeats ?? []) {
+      const sample = await this.#sample({ ...step, purpose: 'repeat' }, 1, true, signal);
+      await this.#store(sample);
+      const differenceDb = medianDifferenceDb(trace, sample.traces.get('S21') ?? trace);
+      const text = `${step.cut} ${step.angleDeg}° repeated: ${differenceDb.toFixed(3)} dB from before`;
+      await this.#note('repeat', text, { cut: step.cut, angleDeg: step.angleDeg, differenceDb });
+    }
   }
 
   /** Only axes with a home switch can find their angle again without a person. */

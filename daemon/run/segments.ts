@@ -17,9 +17,19 @@ export interface Connected {
   sweep: PreparedSweep;
 }
 
-/** Who is there, and the sweep as the analyzer confirms it. Nothing moves. */
-export async function connect(bench: Bench, sweep: SweepSetup, signal: AbortSignal): Promise<Connected> {
-  const controller = await from('positioner', bench.positioner.identify(signal));
+/**
+ * Who is there, and the sweep as the analyzer confirms it. Nothing is set in motion; `isReturn`: the one move
+ * that a dead process of ours may have left is let end, or else is stopped.
+ */
+export async function connect(
+  bench: Bench,
+  clock: Clock,
+  sweep: SweepSetup,
+  isReturn: boolean,
+  signal: AbortSignal,
+): Promise<Connected> {
+  const met = isReturn ? meetAfterDeath(bench.positioner, clock, signal) : bench.positioner.identify(signal);
+  const controller = await from('positioner', met);
   const analyzer = await from('analyzer', bench.analyzer.identify(signal));
   const prepared = await from('analyzer', bench.analyzer.prepare(sweep, signal));
   return { analyzer, controller, sweep: prepared };
@@ -85,8 +95,32 @@ export async function waitForDevice(
   }
 }
 
+/** Longer than a turn takes that the dead process may have begun. */
+const lastMoveMs = 30_000;
+
+/**
+ * A stop would reset the controller, and with it the proof that its count went on unbroken: one queued move is
+ * let end. What still moves after that is not it.
+ */
+async function meetAfterDeath(
+  positioner: Positioner,
+  clock: Clock,
+  signal: AbortSignal,
+): Promise<ControllerIdentity> {
+  const givingUpMs = clock.monotonicMs() + lastMoveMs;
+  for (;;) {
+    try {
+      return await positioner.identify(signal);
+    } catch (error) {
+      if (!isDriverError(error, 'POSITIONER_BUSY_AT_CONNECT')) throw error;
+      if (clock.monotonicMs() > givingUpMs) return meetAgain(positioner, signal);
+      await clock.sleep(500, signal);
+    }
+  }
+}
+
 /** A move of ours may still be going on while we were away: it is stopped before anything is asked. */
-async function meetAgain(positioner: Positioner, signal: AbortSignal): Promise<void> {
+async function meetAgain(positioner: Positioner, signal: AbortSignal): Promise<ControllerIdentity> {
   await positioner.stop();
-  await positioner.identify(signal);
+  return positioner.identify(signal);
 }

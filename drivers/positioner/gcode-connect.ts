@@ -3,7 +3,7 @@
 // unlocks nothing: that is for stop() and home().
 import { DriverError, isDriverError } from '../errors.ts';
 import { urgentBytes } from './gcode-events.ts';
-import { noteMemory, setModes } from './gcode-memory.ts';
+import { findMark, noteMemory, setModes } from './gcode-memory.ts';
 import { askTwice, type GcodeParts, lineWithinMs, pollMs, readPlaced } from './gcode-parts.ts';
 import type { ControllerLine, StatusReport } from './gcode-reports.ts';
 import { checkSettings, limitsFrom, missingSettings, settingsIn } from './gcode-settings.ts';
@@ -31,6 +31,8 @@ export async function connect(parts: GcodeParts, signal?: AbortSignal): Promise<
       }
       const report = await probe(parts, foreign, signal);
       await demandRest(parts, report, signal);
+      // Once for each process: later on the mark is our own, and is checked with every move.
+      parts.countUnbroken ??= await findMark(parts, signal);
       const identity = await interrogate(parts, signal);
       parts.reference.connected();
       return identity;

@@ -21,6 +21,11 @@ export async function setModes(parts: GcodeParts, signal?: AbortSignal): Promise
   parts.memoryMark = (await askPlane(parts, signal)) === markPlane ? 'set' : 'impossible';
 }
 
+/** Whether the mark of an earlier session still stands: the controller has not restarted since. */
+export async function findMark(parts: GcodeParts, signal?: AbortSignal): Promise<boolean> {
+  return (await askPlane(parts, signal)) === markPlane;
+}
+
 /** After a reset of our own: the mark is gone, and is to be set again. */
 export function forgetMark(parts: GcodeParts): void {
   if (parts.memoryMark === 'set') parts.memoryMark = 'missing';

@@ -27,6 +27,8 @@ export interface GcodeParts {
   /** As read at connection; empty before. */
   settings: Settings;
   memoryMark: MemoryMark;
+  /** Whether the mark of an earlier session was found when the controller was first met. */
+  countUnbroken?: boolean;
 }
 
 export const lineWithinMs = 2_000;

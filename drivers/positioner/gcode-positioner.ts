@@ -77,6 +77,10 @@ export class GcodePositioner implements Positioner {
     return this.#parts.reference.valid;
   }
 
+  get countUnbroken(): boolean {
+    return this.#parts.countUnbroken ?? false;
+  }
+
   get position$(): Observable<PositionReport> {
     return this.#parts.reference.position$;
   }

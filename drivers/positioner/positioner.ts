@@ -63,6 +63,11 @@ export interface Positioner {
   readonly axes: readonly AxisSetup[];
   /** True while every axis's coordinate can be trusted: cleared by any restart, alarm, reconnect. */
   readonly referenceValid: boolean;
+  /**
+   * After identify: true when the controller shows that it has not restarted since a driver of ours last spoke
+   * to it, so that its count went on unbroken, also through the death of a process. Absent where it cannot tell.
+   */
+  readonly countUnbroken?: boolean;
   /** Every position report received, moving or not. Hot. */
   readonly position$: Observable<PositionReport>;
   /** Connects, finds out who answers, checks the settings that an unattended run depends on. */

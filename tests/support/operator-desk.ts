@@ -168,7 +168,8 @@ archive: nightcut.sqlite
   #withRange(args: readonly string[]): string[] {
     const [command, ...rest] = args;
     if (command === undefined) return [];
-    const takesRange = ['measure', 'runs', 'show'].includes(command) && !rest.includes('--range');
+    const takesRange =
+      ['check', 'measure', 'resume', 'runs', 'show'].includes(command) && !rest.includes('--range');
     return takesRange ? [command, '--range', this.path('range.yaml'), ...rest] : [...args];
   }
 

@@ -4,9 +4,11 @@ import { InThreadArchive } from '../../daemon/archive/in-thread-archive.ts';
 import { closeBench, makeBench } from '../../daemon/bench.ts';
 import { parsePlan } from '../../daemon/files/parse-plan.ts';
 import { parseRangeFile } from '../../daemon/files/parse-range-file.ts';
+import type { RangeFile } from '../../daemon/files/range-file.ts';
 import type { RunEvent } from '../../daemon/run/events.ts';
+import { orderResume } from '../../daemon/run/order-resume.ts';
 import { orderRun } from '../../daemon/run/order-run.ts';
-import { RunLoop, type RunOutcome } from '../../daemon/run/run-loop.ts';
+import { RunLoop, type RunOrder, type RunOutcome } from '../../daemon/run/run-loop.ts';
 import type { MemoryPort, MemoryPortOptions } from '../../drivers/link/memory.ts';
 import type { Mechanics } from '../../mocks/positioner/mechanics.ts';
 import { type BenchDescription, SimulatedBench } from '../../mocks/simulated-bench.ts';
@@ -21,6 +23,9 @@ export interface RangeOptions {
   gearPlayDeg?: number;
   wire?: MemoryPortOptions;
 }
+
+/** Sees every event; may stop the run. */
+export type Watch = (event: RunEvent, stop: AbortController) => void;
 
 export class SimulatedRange {
   readonly clock = new SimulatedClock();
@@ -47,15 +52,24 @@ export class SimulatedRange {
   }
 
   /** Executes one plan to its end, whatever that is; `watch` sees every event. */
-  async measure(planText: string, watch: (event: RunEvent) => void = () => {}): Promise<RunOutcome> {
+  async measure(planText: string, watch: Watch = () => {}): Promise<RunOutcome> {
     const range = parseRangeFile(this.#rangeText, 'range.yaml');
     const draft = orderRun(range, parsePlan(planText, 'test.plan.yaml'));
+    return this.#execute(range, await draft.complete(this.archive), watch);
+  }
+
+  /** Goes on with the newest interrupted run. */
+  async resume(watch: Watch = () => {}): Promise<RunOutcome> {
+    const range = parseRangeFile(this.#rangeText, 'range.yaml');
+    return this.#execute(range, await orderResume(range, this.archive, undefined), watch);
+  }
+
+  #execute(range: RangeFile, order: RunOrder, watch: Watch): Promise<RunOutcome> {
     const devices = makeBench(range, this.clock, (_, device) => this.#ports[device].link());
-    const order = await draft.complete(this.archive);
     const loop = new RunLoop(devices, this.archive, this.clock, order);
-    loop.events$.subscribe(watch);
-    const work = loop.execute(new AbortController().signal).finally(() => closeBench(devices));
-    return this.clock.run(work);
+    const stop = new AbortController();
+    loop.events$.subscribe((event) => watch(event, stop));
+    return this.clock.run(loop.execute(stop.signal).finally(() => closeBench(devices)));
   }
 
   async close(): Promise<void> {
