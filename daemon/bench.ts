@@ -1,6 +1,7 @@
 // Range file → the devices on the bench, ready to be identified. The only file that names a wire.
+import type { Analyzer } from '../drivers/analyzer/analyzer.ts';
+import { ScanTableAnalyzer } from '../drivers/analyzer/scan-table/scan-table-analyzer.ts';
 import { ScpiAnalyzer } from '../drivers/analyzer/scpi-analyzer.ts';
-import { dialectNamed } from '../drivers/analyzer/scpi-dialects.ts';
 import type { Clock } from '../drivers/clock.ts';
 import type { Link } from '../drivers/link/link.ts';
 import { SerialLink } from '../drivers/link/serial.ts';
@@ -21,15 +22,16 @@ function realLinks(clock: Clock): LinkMaker {
 export function makeBench(range: RangeFile, clock: Clock, makeLink: LinkMaker = realLinks(clock)): Bench {
   const { analyzer, positioner } = range;
   return {
-    analyzer: new ScpiAnalyzer(makeLink(analyzer.link, 'analyzer'), clock, {
-      dialect: dialectNamed(analyzer.dialect),
-      traceFormat: analyzer.trace.format,
-      byteOrder: analyzer.trace.byteOrder,
-    }),
+    analyzer: makeAnalyzer(analyzer, clock, makeLink(analyzer.link, 'analyzer')),
     positioner: new GcodePositioner(makeLink(positioner.link, 'positioner'), clock, {
       axes: positioner.axes,
     }),
   };
+}
+
+function makeAnalyzer({ dialect, trace }: RangeFile['analyzer'], clock: Clock, link: Link): Analyzer {
+  if ('base' in dialect) return new ScanTableAnalyzer(link, clock, { dialect });
+  return new ScpiAnalyzer(link, clock, { dialect, traceFormat: trace.format, byteOrder: trace.byteOrder });
 }
 
 export async function closeBench(bench: Bench): Promise<void> {

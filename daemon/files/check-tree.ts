@@ -101,8 +101,10 @@ function knownKeys(schema: z.core.$ZodType, path: FilePath): string[] {
 
 function unwrapped(schema: z.core.$ZodType): z.core.$ZodType {
   let at = schema;
-  while (at instanceof z.ZodOptional || at instanceof z.ZodPrefault || at instanceof z.ZodDefault) {
-    at = at.unwrap();
+  for (;;) {
+    if (at instanceof z.ZodOptional || at instanceof z.ZodPrefault || at instanceof z.ZodDefault)
+      at = at.unwrap();
+    else if (at instanceof z.ZodPipe && at.in instanceof z.ZodTransform) at = at.out;
+    else return at;
   }
-  return at;
 }

@@ -5,6 +5,7 @@ import { checkText, type Finding } from './check-tree.ts';
 import { isSameDevice } from './link-address.ts';
 import type { RangeAxis, RangeFile, ReferenceAntenna } from './range-file.ts';
 import { type RangeText, rangeSchema } from './range-schema.ts';
+import { checkDialect, dialectOf } from './read-dialect.ts';
 
 /** `path` as the operator wrote it, for messages and relative paths. Throws FILE_INVALID. */
 export function parseRangeFile(text: string, path: string): RangeFile {
@@ -34,6 +35,7 @@ export function parseRangeFile(text: string, path: string): RangeFile {
 function analyzerOf({ noiseFloor, ...written }: RangeText['analyzer']): RangeFile['analyzer'] {
   return {
     ...written,
+    dialect: dialectOf(written.dialect),
     autPort: written.autPort === 1 ? 1 : 2,
     ...(noiseFloor
       ? { noiseFloor: { levelDbm: noiseFloor.level, ifBandwidthHz: noiseFloor.ifBandwidth } }
@@ -78,7 +80,7 @@ function given<Key extends string>(key: Key, value: number | undefined): { [K in
 
 function checkRange(written: RangeText): Finding[] {
   const { analyzer, positioner, antennas } = written;
-  const findings: Finding[] = [];
+  const findings = checkDialect(analyzer.dialect, ['analyzer', 'dialect']);
   const axes = Object.entries(positioner.axes);
   if (axes.length === 0) {
     findings.push({ path: ['positioner', 'axes'], expectation: 'at least one axis, such as azimuth' });

@@ -1,4 +1,6 @@
 // What stands on the site, as checked values with units. Loading and its errors are beside this file.
+import type { ScanTableDialect } from '../../drivers/analyzer/scan-table/scan-table-dialect.ts';
+import type { ScpiDialect } from '../../drivers/analyzer/scpi-dialects.ts';
 import type { AxisSetup } from '../../drivers/positioner/positioner.ts';
 
 /** Where a device is reached. */
@@ -41,7 +43,7 @@ export interface RangeFile {
   cautionLimitWM2?: number;
   analyzer: {
     link: LinkAddress;
-    dialect: string;
+    dialect: ScpiDialect | ScanTableDialect;
     /** The port the AUT is connected to; the range antenna is on the other of 1 and 2. */
     autPort: 1 | 2;
     trace: { format: 'real64' | 'real32' | 'ascii'; byteOrder: 'normal' | 'swapped' };

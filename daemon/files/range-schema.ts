@@ -1,6 +1,6 @@
 // The shape of a range file field by field; what fields demand of each other is in parse-range-file.ts.
 import { z } from 'zod';
-import { dialectNames } from '../../drivers/analyzer/scpi-dialects.ts';
+import { dialectSchema } from './dialect-schema.ts';
 import {
   axisName,
   choice,
@@ -90,7 +90,7 @@ export const rangeSchema = keys({
   }).optional(),
   analyzer: keys({
     link,
-    dialect: choice(dialectNames),
+    dialect: dialectSchema,
     autPort: wholeNumber(1, 2),
     trace: trace.prefault({}),
     noiseFloor: noiseFloor.optional(),

@@ -1,5 +1,6 @@
 import { describe, expect, it } from 'vitest';
 import { parseRangeFile } from '../../../../daemon/files/parse-range-file.ts';
+import { dialectNamed } from '../../../../drivers/analyzer/scpi-dialects.ts';
 import { refusalOf } from './refusal.ts';
 import { rangeLines, spoiled, whole } from './written-files.ts';
 
@@ -16,7 +17,7 @@ describe('a range file', () => {
       heights: { rangeAntennaM: 3, autM: 2.5 },
       analyzer: {
         link: { kind: 'tcp', host: '127.0.0.1', port: 5025 },
-        dialect: 'numbered-parameter',
+        dialect: dialectNamed('numbered-parameter'),
         autPort: 1,
         trace: { format: 'real64', byteOrder: 'swapped' },
       },
