@@ -4,6 +4,7 @@ import type { RangeFile } from '../../files/range-file.ts';
 import { predictStepsMs, timeLeftMs } from '../duration.ts';
 import type { PlannedRun, PlannedStep } from '../expand.ts';
 import type { Finding } from './finding.ts';
+import { durationText } from './wording.ts';
 
 export interface NightLength {
   durationMs: number;
@@ -28,10 +29,7 @@ export function nightLength(run: PlannedRun, plan: Plan, range: RangeFile, nowWa
 
 export function checkDuration(length: NightLength): Finding {
   const { durationMs, endWallMs } = length;
-  const minutes = Math.max(1, Math.round(durationMs / 60_000));
-  const text =
-    `at least ${minutes >= 120 ? `${(minutes / 60).toFixed(1)} h` : `${minutes} min`} without homing and retries; ` +
-    'sweeps reckoned as points over IF bandwidth';
+  const text = `at least ${durationText(durationMs)} without homing and retries; sweeps reckoned as points over IF bandwidth`;
   const facts = { durationMs, endWallMs };
   if (durationMs <= longNightMs) return { subject: 'duration', verdict: 'go', text, facts };
   const change =

@@ -43,12 +43,12 @@ interface Driven {
 /** S21 drives port 1; the match of an AUT on port 2 drives that as well. */
 function drivenAntennas(plan: Plan, range: RangeFile): Driven[] {
   const { gainDbi, gainKey } = measuredAntenna(plan, range);
-  const aut = { name: 'the AUT', key: gainKey, ...(gainDbi === undefined ? {} : { gainDbi }) };
+  const aut = { name: plan.antenna.name, key: gainKey, ...(gainDbi === undefined ? {} : { gainDbi }) };
   if (range.analyzer.autPort === 1) return [aut];
   const { rangeAntennaGainDbi } = range;
   const key = 'antennas.rangeAntennaGain in the range file';
   const known = rangeAntennaGainDbi === undefined ? {} : { gainDbi: rangeAntennaGainDbi };
-  return [{ name: 'the range antenna', key, ...known }, aut];
+  return [{ name: range.rangeAntenna, key, ...known }, aut];
 }
 
 /** Both public limits rise or stay with frequency from 30 MHz on: the bottom of the band has the lowest. */

@@ -46,6 +46,12 @@ export function bytesText(bytes: number): string {
   return bytes >= 1e6 ? `${digits(bytes / 1e6)} MB` : `${digits(Math.max(1, bytes / 1e3))} kB`;
 }
 
+export function durationText(ms: number): string {
+  if (ms < 120_000) return `${Math.ceil(ms / 1000)} s`;
+  return ms < 7_200_000 ? `${Math.round(ms / 60_000)} min` : `${(ms / 3_600_000).toFixed(1)} h`;
+}
+
+/** The age of what is hours or days old. */
 export function daysText(ms: number): string {
   const hours = ms / 3_600_000;
   if (hours < 48) return `${Math.max(0, Math.round(hours))} h`;
