@@ -228,7 +228,8 @@ export class ScanTableAnalyzer implements Analyzer {
   async #set(name: 'ifBandwidth' | 'power', value: number, stop: AbortSignal): Promise<number> {
     await this.#tell(name, { value }, stop);
     if (this.#dialect.templates[`${name}Query`] === undefined) return value;
-    return numberIn(await this.#ask(`${name}Query`, stop));
+    const lines = await this.#ask(`${name}Query`, stop);
+    return this.#decoded(() => numberIn(lines));
   }
 
   async #askCorrection(stop: AbortSignal): Promise<boolean | undefined> {
@@ -279,10 +280,15 @@ export class ScanTableAnalyzer implements Analyzer {
       maxChars: charsPerLine * (points + 2),
       signal: stop,
     });
+    return this.#decoded(() => decodeTable(lines, this.#dialect.columns, frequenciesHz));
+  }
+
+  /** An answer of another form than asked for may be that to another question. */
+  #decoded<T>(decode: () => T): T {
     try {
-      return decodeTable(lines, this.#dialect.columns, frequenciesHz);
+      return decode();
     } catch (error) {
-      this.#session.distrust('the table of a scan has another shape');
+      this.#session.distrust('an answer has another form than asked for');
       throw error;
     }
   }
@@ -311,7 +317,11 @@ export class ScanTableAnalyzer implements Analyzer {
     if (this.#dialect.templates.outputQuery === undefined) return;
     const lines = await this.#ask('outputQuery', stop);
     const word = lines.join(' ').trim().split(/\s+/).at(-1) ?? '';
-    requireSetting('output', onOff === 'ON', decodeBoolean(word));
+    requireSetting(
+      'output',
+      onOff === 'ON',
+      this.#decoded(() => decodeBoolean(word)),
+    );
   }
 
   /** A setting; one that the dialect does not have is left out. What it is answered with is a refusal. */
