@@ -5,6 +5,8 @@ import { scanTemplateNames } from '../../drivers/analyzer/scan-table/scan-table-
 import { dialectNames, templateNames } from '../../drivers/analyzer/scpi-dialects.ts';
 import { choice, keys, list, name, quantity, refuse, wholeNumber } from './fields.ts';
 
+/** What may stand there as a name alone; a scan-table needs more than its name. */
+export const builtInNames = dialectNames;
 const baseNames = [...dialectNames, 'scan-table'];
 const longestMessage = 500;
 const mostMessages = 8;
