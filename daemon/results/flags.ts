@@ -1,6 +1,6 @@
 // What a reader of the figures must know before trusting them. Judged by the median over the band: one
 // frequency in a null says nothing of the range.
-import type { SetupRecord } from '../archive/archive.ts';
+import type { RunEventRecord, SetupRecord } from '../archive/archive.ts';
 import type { Plan, PlanCut } from '../files/plan-file.ts';
 import { narrowReadingDeg } from '../pattern/beamwidth.ts';
 import type { Figure } from '../pattern/figure.ts';
@@ -84,6 +84,18 @@ export function runFlags(
     flags.push({ code: 'RUN_INTERRUPTED', text: `the run was interrupted ${times}${end}` });
   }
   return flags;
+}
+
+/** What the positions that were taken again after an interruption differ by, where that is more than drift may. */
+export function repeatFlags(plan: Plan, events: readonly RunEventRecord[]): Flag[] {
+  const limitDb = plan.checks.driftDb;
+  return events.flatMap(({ kind, facts }) => {
+    const differenceDb = Number(facts['differenceDb']);
+    if (kind !== 'repeat' || !(Math.abs(differenceDb) > limitDb)) return [];
+    const at = `${String(facts['cut'])} at ${String(facts['angleDeg'])}°`;
+    const text = `${at}, taken again after an interruption, differs by ${differenceDb.toFixed(2)} dB (median over the band; limit ${limitDb} dB): look for slip or a moved cable`;
+    return [{ code: 'REPEAT_DIFFERS', text, cut: String(facts['cut']) }];
+  });
 }
 
 function timesInWords(times: number): string {

@@ -10,7 +10,7 @@ import { tieNoiseDb } from '../pattern/tie-noise.ts';
 import { type CutLevels, cutLevels } from './cut-levels.ts';
 import { entryOf } from './figure-entry.ts';
 import { type CutFigures, cutFigureKeys, type FiguresDocument, type Flag } from './figures-document.ts';
-import { cutFlags, runFlags } from './flags.ts';
+import { cutFlags, repeatFlags, runFlags } from './flags.ts';
 import { matchFigures } from './match-figures.ts';
 import { magnitudes, meanTrace } from './mean-trace.ts';
 
@@ -35,6 +35,7 @@ export async function runFigures(
   const floorDb = sweepNoiseDb(samples, frequenciesHz);
   const cuts: CutFigures[] = [];
   const flags: Flag[] = runFlags(setups, segments.length, run.state);
+  flags.push(...repeatFlags(plan, await archive.events(number)));
   for (const cut of frequenciesHz.length > 0 ? plan.cuts : []) {
     const levels = cutLevels(samples, cut.name, frequenciesHz, floorDb);
     const figures = figuresOfCut(run, cut, levels, frequenciesHz, reflection, options);

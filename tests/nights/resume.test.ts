@@ -77,6 +77,18 @@ it('repeats the last positions and tells what they differ by', async () => {
   for (const note of notes) expect(Math.abs(Number(note.facts['differenceDb']))).toBeLessThan(0.5);
 });
 
+it('flags a slip that happened in between, with its size', async () => {
+  const range = newRange('none');
+  await range.measure(plan, (event, stop) => {
+    if (event.kind === 'sample' && event.sample.angleDeg === -60) stop.abort();
+  });
+  // Somebody leaned on the boom: 8° of slip that no counter sees.
+  range.bench.controller.loseSteps('X', 8);
+  const { run } = await range.resume();
+  const { flags } = await runFigures(range.archive, run.number);
+  expect(flags.map((flag) => flag.code)).toContain('REPEAT_DIFFERS');
+});
+
 it('refuses what cannot go on', async () => {
   const range = newRange('none');
   await expect(range.resume()).rejects.toMatchObject({ code: 'RUN_NOT_RESUMABLE' });
