@@ -80,10 +80,10 @@ function template() {
 }
 
 function message() {
-  const says = 'one query of printable ASCII without ;';
+  const says = 'one question of printable ASCII without ;';
   return z
     .string({ error: says })
-    .refine((text) => isMessage(text) && text.includes('?'), { error: says })
+    .refine((text) => isMessage(text), { error: says })
     .meta({ description: says });
 }
 

@@ -23,7 +23,7 @@ import { nearestWord } from './nearest-word.ts';
 
 type Path = readonly (string | number)[];
 
-const scpiOnly = ['channel', 'oneStartRuns', 'completion'] as const;
+const scpiOnly = ['channel', 'oneStartRuns'] as const;
 const scanOnly = ['identity', 'prompt', 'sendsLineEnd', 'source', 'correctionOnSays', 'fixed'] as const;
 
 /** The dialect as the driver takes it; only for what checkDialect has nothing against. */
@@ -66,11 +66,12 @@ function checkColumns({ columns }: DialectText, path: Path): Finding[] {
 }
 
 function scanTableOf(written: DialectText): ScanTableDialect {
-  const templates: Partial<Record<ScanTemplateName, string>> = {};
+  const templates: Partial<Record<ScanTemplateName, readonly string[]>> = {};
   for (const [name, template] of Object.entries(written.templates)) {
-    if (template !== undefined && template !== 'none') templates[name as ScanTemplateName] = template[0]!;
+    if (template !== undefined && template !== 'none') templates[name as ScanTemplateName] = template;
   }
   const { identity, prompt, sendsLineEnd = 'lf', correctionOnSays, fixed, columns, source } = written;
+  const completion = written.completion ? completionOf(written.completion) : undefined;
   return {
     base: 'scan-table',
     templates,
@@ -78,6 +79,7 @@ function scanTableOf(written: DialectText): ScanTableDialect {
     prompt,
     sendsLineEnd,
     columns: columns ?? ['frequency', 're', 'im'],
+    completion: completion?.by === 'operation-complete-bit' ? undefined : completion,
     fixed: { ifBandwidthHz: fixed?.ifBandwidth, powerDbm: fixed?.power },
     source: source ?? 'switched',
     correctionOnSays,
@@ -85,18 +87,22 @@ function scanTableOf(written: DialectText): ScanTableDialect {
 }
 
 function checkScanTable(written: DialectText, path: Path): Finding[] {
-  const several = Object.entries(written.templates).flatMap(([name, template]): Finding[] => {
+  const wrong = Object.entries(written.templates).flatMap(([name, template]): Finding[] => {
     if (template === undefined || template === 'none') return [];
-    const problem = problemOfScanTemplate(name as ScanTemplateName, template[0]!);
-    if (template.length === 1 && problem === undefined) return [];
-    const expectation = problem ? `a template that can be sent: it ${problem}` : 'one line, for this base';
+    const problem = problemOfScanTemplate(name as ScanTemplateName, template);
+    if (problem === undefined) return [];
+    const expectation = `a template that can be sent: it ${problem}`;
     return [{ path: [...path, 'templates', name], expectation }];
   });
   const missing = problemsOfScanTable(scanTableOf(written)).map((problem) => ({
     path,
     expectation: problem,
   }));
-  return several.length > 0 ? several : missing;
+  wrong.push(...checkCompletion(written, [...path, 'completion']));
+  if (written.completion?.by === 'operation-complete-bit') {
+    wrong.push({ path: [...path, 'completion', 'by'], expectation: 'poll or wait, for this base' });
+  }
+  return wrong.length > 0 ? wrong : missing;
 }
 
 function scpiDialectOf(written: DialectText): ScpiDialect {
@@ -143,7 +149,7 @@ function checkScpi(written: DialectText, path: Path): Finding[] {
   }));
 }
 
-function checkCompletion({ completion }: DialectText, path: Path): Finding[] {
+function checkCompletion({ base, completion }: DialectText, path: Path): Finding[] {
   if (!completion) return [];
   const { by, query, until, factor } = completion;
   if (by === 'poll' && (query === undefined || until === undefined)) {
@@ -151,6 +157,9 @@ function checkCompletion({ completion }: DialectText, path: Path): Finding[] {
   }
   if (by !== 'poll' && (query !== undefined || until !== undefined)) {
     return [{ path, expectation: 'query and until beside by: poll only' }];
+  }
+  if (base !== 'scan-table' && query !== undefined && !query.includes('?')) {
+    return [{ path: [...path, 'query'], expectation: 'a query, with a question mark' }];
   }
   if (by !== 'wait' && factor !== undefined) return [{ path, expectation: 'factor beside by: wait only' }];
   return [];

@@ -62,7 +62,11 @@ export async function runSweeps(
     startMonotonicMs,
     stopMonotonicMs,
     timeLaw,
-    statedEndMs: doubtfulEnd(sweep, startedMs, stopMonotonicMs),
+    // Nobody has said that a sweep has ended whose time was merely waited out.
+    statedEndMs:
+      talk.dialect.completion.by === 'wait'
+        ? stopMonotonicMs
+        : doubtfulEnd(sweep, startedMs, stopMonotonicMs),
   };
 }
 

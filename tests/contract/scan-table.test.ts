@@ -21,11 +21,11 @@ const dialect: ScanTableDialect = {
   source: 'only-while-scanning',
   fixed: { powerDbm: -7 },
   templates: {
-    identityQuery: 'version',
-    ifBandwidth: 'bandwidth {value}',
-    ifBandwidthQuery: 'bandwidth',
-    scanS21: 'scan {start} {stop} {points} 5',
-    scanS11: 'scan {start} {stop} {points} 3',
+    identityQuery: ['version'],
+    ifBandwidth: ['bandwidth {value}'],
+    ifBandwidthQuery: ['bandwidth'],
+    scanS21: ['scan {start} {stop} {points} 5'],
+    scanS11: ['scan {start} {stop} {points} 3'],
   },
 };
 
@@ -219,7 +219,7 @@ describe('an analyzer with a command tree of its own', () => {
   });
 
   it('is refused a description it cannot be driven by', () => {
-    const without = { ...dialect, templates: { ...dialect.templates, scanS11: 'scan {start};reboot' } };
+    const without = { ...dialect, templates: { ...dialect.templates, scanS11: ['scan {start};reboot'] } };
     const { clock, port } = consoleBench();
     const make = (): Analyzer => new ScanTableAnalyzer(port.link(), clock, { dialect: without });
     expect(make).toThrow(expect.objectContaining({ code: 'ANALYZER_BAD_DIALECT' }));

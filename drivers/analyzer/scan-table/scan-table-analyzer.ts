@@ -17,8 +17,8 @@ import type {
 import { KnownInstrument } from '../known-instrument.ts';
 import { OperationQueue } from '../operation-queue.ts';
 import { fillTemplate, type Substitutions } from '../scpi-dialects.ts';
-import { linearGrid, requireSetting } from '../scpi-setup.ts';
-import { decodeBoolean, excerpt } from '../scpi-values.ts';
+import { linearGrid, requireAxis, requireSetting } from '../scpi-setup.ts';
+import { decodeBoolean, decodeNumber, excerpt } from '../scpi-values.ts';
 import type { TrafficNote } from '../scpi-wire.ts';
 import { requirePlausible } from '../trace-checks.ts';
 import {
@@ -43,6 +43,8 @@ const defaultAnswerTimeoutMs = 3_000;
 /** How much longer than estimated from the bandwidth a scan may stay silent. */
 const scanSlackMs = 15_000;
 const charsPerLine = 200;
+const pollMs = 20;
+const waitSlackMs = 100;
 const bandwidthTolerance = 1e-3;
 const powerToleranceDb = 0.01;
 
@@ -273,14 +275,59 @@ export class ScanTableAnalyzer implements Analyzer {
   ): Promise<Float64Array> {
     const { startHz, stopHz, points, ifBandwidthHz, powerDbm } = setup;
     const values = { start: startHz, stop: stopHz, points, ifBandwidth: ifBandwidthHz, power: powerDbm };
+    const messages = fillTemplate(this.#dialect.templates[scanTemplateOf(parameter)] ?? [], values);
+    for (const message of messages.slice(0, -1)) await this.#tellMessage(message, stop);
+    await this.#awaitEnd(setup, stop);
     const lines = await this.#session.ask({
-      message: this.#message(scanTemplateOf(parameter), values),
+      message: messages.at(-1) ?? '',
       lines: points,
       timeoutMs: 1.5 * estimatedScanMs(setup) + scanSlackMs,
       maxChars: charsPerLine * (points + 2),
       signal: stop,
     });
-    return this.#decoded(() => decodeTable(lines, this.#dialect.columns, frequenciesHz));
+    const trace = this.#decoded(() => decodeTable(lines, this.#dialect.columns, frequenciesHz));
+    await this.#confirmAxis(frequenciesHz, stop);
+    return trace;
+  }
+
+  /** For scans that only begin one: the end as the description says. Throws ANALYZER_SWEEP_TIMEOUT. */
+  async #awaitEnd(setup: SweepSetup, stop: AbortSignal): Promise<void> {
+    const { completion } = this.#dialect;
+    if (!completion) return;
+    const expectedMs = estimatedScanMs(setup);
+    if (completion.by === 'wait')
+      return this.#clock.sleep(expectedMs * completion.factor + waitSlackMs, stop);
+    const allowedMs = 1.5 * expectedMs + scanSlackMs;
+    const deadlineMs = this.#clock.monotonicMs() + allowedMs;
+    while (this.#clock.monotonicMs() < deadlineMs) {
+      await this.#clock.sleep(pollMs, stop);
+      const lines = await this.#session.ask({ message: completion.query, lines: 1, signal: stop });
+      if (lines.join(' ') === completion.until.trim()) return;
+    }
+    throw new DriverError(
+      'ANALYZER_SWEEP_TIMEOUT',
+      `'${completion.query}' was not answered with '${completion.until}' within ${Math.round(allowedMs)} ms`,
+      { allowedMs: Math.round(allowedMs) },
+    );
+  }
+
+  /** Where the table has no frequencies. Throws ANALYZER_SETTING_DIFFERS. */
+  async #confirmAxis(frequenciesHz: Float64Array, stop: AbortSignal): Promise<void> {
+    const { columns, templates } = this.#dialect;
+    if (columns.includes('frequency') || templates.frequencyQuery === undefined) return;
+    const points = frequenciesHz.length;
+    const lines = await this.#session.ask({
+      message: this.#message('frequencyQuery'),
+      lines: points,
+      maxChars: charsPerLine * (points + 2),
+      signal: stop,
+    });
+    this.#decoded(() => {
+      if (lines.length !== points) {
+        throw new DriverError('ANALYZER_BAD_ANSWER', `${lines.length} frequencies instead of ${points}`);
+      }
+      requireAxis(frequenciesHz, Float64Array.from(lines, decodeNumber));
+    });
   }
 
   /** An answer of another form than asked for may be that to another question. */
@@ -327,7 +374,10 @@ export class ScanTableAnalyzer implements Analyzer {
   /** A setting; one that the dialect does not have is left out. What it is answered with is a refusal. */
   async #tell(name: ScanTemplateName, values: Substitutions, stop: AbortSignal): Promise<void> {
     if (this.#dialect.templates[name] === undefined) return;
-    const message = this.#message(name, values);
+    await this.#tellMessage(this.#message(name, values), stop);
+  }
+
+  async #tellMessage(message: string, stop: AbortSignal): Promise<void> {
     const lines = await this.#session.ask({ message, lines: 0, signal: stop });
     if (lines.length === 0) return;
     const answer = excerpt(lines.join(' '));
@@ -342,7 +392,7 @@ export class ScanTableAnalyzer implements Analyzer {
   }
 
   #message(name: ScanTemplateName, values: Substitutions = {}): string {
-    const [message] = fillTemplate(this.#dialect.templates[name] ?? '', values);
+    const [message] = fillTemplate(this.#dialect.templates[name] ?? [], values);
     return message ?? '';
   }
 }

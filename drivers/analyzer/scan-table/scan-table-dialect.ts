@@ -1,10 +1,10 @@
 // Analyzers with command words of their own that answer one line ("scan from here to there") with a table of
 // numbers: what such an instrument is told and how it answers, as data. There is no built-in one; a range file
-// describes it. Placeholders of a scan: {start} {stop} in Hz, {points}, {ifBandwidth} in Hz, {power} in dBm; of a
+// describes it. A scan may be several lines: the last is the one that is answered with the table. Placeholders of a scan: {start} {stop} in Hz, {points}, {ifBandwidth} in Hz, {power} in dBm; of a
 // setting: {value}; of the output: {onOff} or {oneZero}.
 import { DriverError } from '../../errors.ts';
 import type { SParameter } from '../analyzer.ts';
-import { fillTemplate, type Substitutions, type TraceColumn } from '../scpi-dialects.ts';
+import { type Completion, fillTemplate, type Substitutions, type TraceColumn } from '../scpi-dialects.ts';
 
 export const scanTemplateNames = [
   'identityQuery',
@@ -19,13 +19,14 @@ export const scanTemplateNames = [
   'output',
   'outputQuery',
   'correctionQuery',
+  'frequencyQuery',
   'abort',
 ] as const;
 export type ScanTemplateName = (typeof scanTemplateNames)[number];
 
 export interface ScanTableDialect {
   readonly base: 'scan-table';
-  readonly templates: Readonly<Partial<Record<ScanTemplateName, string>>>;
+  readonly templates: Readonly<Partial<Record<ScanTemplateName, readonly string[]>>>;
   /** What people call the instrument; what it answers to identityQuery stands beside it. */
   readonly identity?: string | undefined;
   /** What it prints when it is ready for the next line; without one, answers are counted in lines. */
@@ -33,6 +34,8 @@ export interface ScanTableDialect {
   readonly sendsLineEnd: 'lf' | 'cr' | 'crlf';
   /** Of each line of the table. With the frequency in it every point is proven to be the one asked for. */
   readonly columns: readonly TraceColumn[];
+  /** What is done between the lines before the last one of a scan and the last; without it, nothing. */
+  readonly completion?: Exclude<Completion, { by: 'operation-complete-bit' }> | undefined;
   /** Settings that the instrument has once and for all; a plan must ask for just these. */
   readonly fixed: { readonly ifBandwidthHz?: number | undefined; readonly powerDbm?: number | undefined };
   /** `switched`: by `output`; `only-while-scanning`: there is nothing to switch off between two scans. */
@@ -54,14 +57,18 @@ function sampleOf(name: ScanTemplateName): Substitutions {
 }
 
 /** What is wrong with one template, after its name; undefined when it can be used. */
-export function problemOfScanTemplate(name: ScanTemplateName, template: string): string | undefined {
+export function problemOfScanTemplate(
+  name: ScanTemplateName,
+  template: readonly string[],
+): string | undefined {
   try {
     fillTemplate(template, sampleOf(name));
   } catch (error) {
     if (error instanceof DriverError) return `cannot be sent: ${error.message}`;
     throw error;
   }
-  const has = (word: string): boolean => template.includes(`{${word}}`);
+  const has = (word: string): boolean => template.some((line) => line.includes(`{${word}}`));
+  if (template.length !== 1 && !name.startsWith('scan')) return 'must be one line';
   if (name.startsWith('scan') && !(has('start') && has('stop') && has('points'))) {
     return 'must contain {start}, {stop} and {points}';
   }
@@ -80,7 +87,8 @@ export function problemsOfScanTable(dialect: ScanTableDialect): string[] {
     problems.push('identityQuery: any question whose answer never changes, to find back into step');
   }
   const isTold = (name: 'ifBandwidth' | 'power'): boolean =>
-    templates[name] !== undefined || scans.every((scan) => scan === undefined || scan.includes(`{${name}}`));
+    templates[name] !== undefined ||
+    scans.every((scan) => scan === undefined || scan.some((line) => line.includes(`{${name}}`)));
   if (fixed.ifBandwidthHz === undefined && !isTold('ifBandwidth')) {
     problems.push('the template ifBandwidth, or the bandwidth that the instrument has under fixed');
   }
@@ -89,6 +97,12 @@ export function problemsOfScanTable(dialect: ScanTableDialect): string[] {
   }
   if (dialect.source === 'switched' && templates.output === undefined) {
     problems.push('the template output, or source: only-while-scanning');
+  }
+  if (!columns.includes('frequency') && templates.frequencyQuery === undefined) {
+    problems.push('columns with frequency, or the template frequencyQuery: else no grid is proven');
+  }
+  if (dialect.completion && scans.some((scan) => scan?.length === 1)) {
+    problems.push('scans of several lines, for completion is waited for before the last one');
   }
   if (!columns.includes('re') || !columns.includes('im')) problems.push('columns with re and im');
   return problems;

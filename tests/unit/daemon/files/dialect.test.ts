@@ -74,7 +74,7 @@ describe('a dialect in a range file', () => {
       sendsLineEnd: 'lf',
       columns: ['frequency', 're', 'im'],
       fixed: { powerDbm: -7 },
-      templates: { scanS21: 'scan {start} {stop} {points} 5' },
+      templates: { scanS21: ['scan {start} {stop} {points} 5'] },
     });
   });
 
@@ -111,7 +111,7 @@ describe('a dialect in a range file', () => {
     [
       [...templates('      points: ":P {value}"'), '    completion: { by: poll, query: ":A", until: "1" }'],
       13,
-      'completion.query: expected one query',
+      'completion.query: expected a query, with a question mark',
     ],
     [
       [...templates('      points: ":P {value}"'), '    completion: { by: wait, factor: 0.5 }'],
@@ -129,7 +129,11 @@ describe('a dialect in a range file', () => {
       16,
       'it must contain {start}, {stop} and {points}',
     ],
-    [[...scanTable, '      scanS11: ["a {start} {stop} {points}", "b"]'], 17, 'one line, for this base'],
+    [[...scanTable, '      power: ["p {value}", "b"]'], 17, 'it must be one line'],
+    [[...scanTable, '    columns: [re, im]'], 8, 'columns with frequency, or the template frequencyQuery'],
+    [[...scanTable, '    completion: { by: wait }'], 8, 'scans of several lines'],
+    [[...scanTable, '    completion: { by: operation-complete-bit }'], 17, 'poll or wait, for this base'],
+    [[...scanTable, '    completion: { by: poll, query: "a?" }'], 17, 'query and until beside by: poll'],
     [[...scanTable, '      startSweep: ":INIT"'], 17, 'the base scan-table has no startSweep'],
     [[...scanTable, '    channel: 2'], 17, 'no such key for the base scan-table'],
   ])('is refused: %j', (lines, line, words) => {
