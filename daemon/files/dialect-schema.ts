@@ -2,7 +2,8 @@
 // is based on and what differs. What the parts demand of each other is in read-dialect.ts.
 import { z } from 'zod';
 import { scanTemplateNames } from '../../drivers/analyzer/scan-table/scan-table-dialect.ts';
-import { dialectNames, templateNames } from '../../drivers/analyzer/scpi-dialects.ts';
+import { dialectNames } from '../../drivers/analyzer/scpi-dialects.ts';
+import { templateNames } from '../../drivers/analyzer/scpi-templates.ts';
 import { choice, keys, list, name, quantity, refuse, wholeNumber } from './fields.ts';
 
 /** What may stand there as a name alone; a scan-table needs more than its name. */

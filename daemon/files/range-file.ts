@@ -1,6 +1,6 @@
 // What stands on the site, as checked values with units. Loading and its errors are beside this file.
 import type { ScanTableDialect } from '../../drivers/analyzer/scan-table/scan-table-dialect.ts';
-import type { ScpiDialect } from '../../drivers/analyzer/scpi-dialects.ts';
+import type { ScpiDialect } from '../../drivers/analyzer/scpi-templates.ts';
 import type { AxisSetup } from '../../drivers/positioner/positioner.ts';
 
 /** Where a device is reached. */

@@ -6,9 +6,9 @@ import {
   type ScanTemplateName,
   scanTemplateNames,
 } from '../../drivers/analyzer/scan-table/scan-table-dialect.ts';
+import { dialectNamed } from '../../drivers/analyzer/scpi-dialects.ts';
 import {
   type Completion,
-  dialectNamed,
   problemOfTemplate,
   problemsOf,
   type ScpiDialect,
@@ -16,7 +16,7 @@ import {
   type ScpiTemplates,
   type TemplateName,
   templateNames,
-} from '../../drivers/analyzer/scpi-dialects.ts';
+} from '../../drivers/analyzer/scpi-templates.ts';
 import type { Finding } from './check-tree.ts';
 import type { DialectText } from './dialect-schema.ts';
 import { nearestWord } from './nearest-word.ts';

@@ -8,9 +8,9 @@
 import { DriverError, isDriverError } from '../errors.ts';
 import type { Acquisition, SParameter, SweepSetup, TimeLaw } from './analyzer.ts';
 import type { ScpiConversation } from './scpi-conversation.ts';
-import type { Completion, Substitutions, TraceColumn } from './scpi-dialects.ts';
 import { confirmAxis, confirmGrid, type InstrumentSweep, requireAxis } from './scpi-setup.ts';
 import { anyErrorBits, eventBits } from './scpi-status.ts';
+import type { Completion, Substitutions, TraceColumn } from './scpi-templates.ts';
 import { decodeWord } from './scpi-values.ts';
 
 /** One is enough for a register that works, two where an end of before stood in it. */

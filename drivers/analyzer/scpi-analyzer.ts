@@ -15,10 +15,10 @@ import type {
 } from './analyzer.ts';
 import { confirmEnd, confirmUnchanged, readTraces, runSweeps, type SweepRun } from './scpi-acquisition.ts';
 import type { ScpiConversation, TraceForm } from './scpi-conversation.ts';
-import { problemsOf, type ScpiDialect } from './scpi-dialects.ts';
 import { ScpiOperations } from './scpi-operations.ts';
 import { applySetup, type InstrumentSweep, requireSetting } from './scpi-setup.ts';
 import { isCurable } from './scpi-status.ts';
+import { problemsOf, type ScpiDialect } from './scpi-templates.ts';
 import { decodeIdentity } from './scpi-values.ts';
 import type { TrafficNote } from './scpi-wire.ts';
 import { requirePlausible } from './trace-checks.ts';

@@ -3,10 +3,10 @@
 // the answer to an older question.
 import type { Clock } from '../clock.ts';
 import { DriverError } from '../errors.ts';
-import { fillTemplate, type ScpiDialect, type Substitutions, type TemplateName } from './scpi-dialects.ts';
 import { drainErrorQueue } from './scpi-resync.ts';
 import type { AskOptions, ScpiSession } from './scpi-session.ts';
 import { errorOf } from './scpi-status.ts';
+import { fillTemplate, type ScpiDialect, type Substitutions, type TemplateName } from './scpi-templates.ts';
 import {
   decodeBlock,
   decodeBoolean,

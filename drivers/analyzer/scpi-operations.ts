@@ -8,10 +8,11 @@ import type { AnalyzerIdentity } from './analyzer.ts';
 import { KnownInstrument } from './known-instrument.ts';
 import { OperationQueue } from './operation-queue.ts';
 import { ScpiConversation, type TraceForm } from './scpi-conversation.ts';
-import { fillTemplate, type ScpiDialect, type TemplateName, withoutQuery } from './scpi-dialects.ts';
+import { withoutQuery } from './scpi-dialects.ts';
 import type { SessionOpening } from './scpi-resync.ts';
 import { type ReopenOptions, ScpiSession } from './scpi-session.ts';
 import { explainSilence, stillOutOfStep, undefinedHeader } from './scpi-status.ts';
+import { fillTemplate, type ScpiDialect, type TemplateName } from './scpi-templates.ts';
 import type { TrafficNote } from './scpi-wire.ts';
 
 export interface OperationsOptions {

@@ -5,9 +5,9 @@
 import type { Clock } from '../clock.ts';
 import { DriverError } from '../errors.ts';
 import type { Link } from '../link/link.ts';
-import { checkMessage } from './scpi-dialects.ts';
 import type { Expected } from './scpi-reader.ts';
 import { proveStep, type SessionOpening } from './scpi-resync.ts';
+import { checkMessage } from './scpi-templates.ts';
 import { type Answer, type Exchange, ScpiWire, type TrafficNote } from './scpi-wire.ts';
 
 export type Standing =

@@ -3,8 +3,8 @@
 import { DriverError } from '../errors.ts';
 import type { PreparedSweep, SweepSetup } from './analyzer.ts';
 import type { ScpiConversation } from './scpi-conversation.ts';
-import type { TemplateName } from './scpi-dialects.ts';
 import { errorOf, undefinedHeader } from './scpi-status.ts';
+import type { TemplateName } from './scpi-templates.ts';
 
 /** Read-back is printed with 7 digits at worst; a synthesizer's own steps are finer than this. */
 const frequencyTolerance = 1e-6;

@@ -1,6 +1,6 @@
 // What the built-in dialects have in common: stimulus, averaging, trace format, errors. How S-parameters are
 // chosen and sweeps are started is each dialect's own.
-import type { ScpiDialect } from '../scpi-dialects.ts';
+import type { ScpiDialect } from '../scpi-templates.ts';
 
 /**
  * Averaging is asked for by point, for then one start means one thing everywhere; where the instrument

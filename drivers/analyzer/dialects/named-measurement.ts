@@ -1,6 +1,6 @@
 // S-parameters by measurements with names: what is there is thrown away, each is made anew and put into a window
 // (some instruments sweep only what is shown), and data are read of the one selected by its name.
-import type { ScpiDialect } from '../scpi-dialects.ts';
+import type { ScpiDialect } from '../scpi-templates.ts';
 import { commonShape, commonTemplates } from './common-shape.ts';
 
 export const namedMeasurement: ScpiDialect = {

@@ -1,5 +1,5 @@
 // S-parameters by number of a trace: their count is set, each is defined, and data are read of the selected one.
-import type { ScpiDialect } from '../scpi-dialects.ts';
+import type { ScpiDialect } from '../scpi-templates.ts';
 import { commonShape, commonTemplates } from './common-shape.ts';
 
 export const numberedParameter: ScpiDialect = {

@@ -1,6 +1,6 @@
 // S-parameters by traces whose number stands in every header, also in the question for data: nothing is selected
 // that somebody else could select away. Sweeping is a mode: held, or one sweep.
-import type { ScpiDialect } from '../scpi-dialects.ts';
+import type { ScpiDialect } from '../scpi-templates.ts';
 import { commonShape, commonTemplates } from './common-shape.ts';
 
 export const selectedTrace: ScpiDialect = {

@@ -16,8 +16,8 @@ import type {
 } from '../analyzer.ts';
 import { KnownInstrument } from '../known-instrument.ts';
 import { OperationQueue } from '../operation-queue.ts';
-import { fillTemplate, type Substitutions } from '../scpi-dialects.ts';
 import { linearGrid, requireAxis, requireSetting } from '../scpi-setup.ts';
+import { fillTemplate, type Substitutions } from '../scpi-templates.ts';
 import { decodeBoolean, decodeNumber, excerpt } from '../scpi-values.ts';
 import type { TrafficNote } from '../scpi-wire.ts';
 import { requirePlausible } from '../trace-checks.ts';

@@ -4,7 +4,7 @@
 // setting: {value}; of the output: {onOff} or {oneZero}.
 import { DriverError } from '../../errors.ts';
 import type { SParameter } from '../analyzer.ts';
-import { type Completion, fillTemplate, type Substitutions, type TraceColumn } from '../scpi-dialects.ts';
+import { type Completion, fillTemplate, type Substitutions, type TraceColumn } from '../scpi-templates.ts';
 
 export const scanTemplateNames = [
   'identityQuery',

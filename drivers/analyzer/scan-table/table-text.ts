@@ -1,7 +1,7 @@
 // Lines of an instrument that answers in text to values, pure: the table of a scan, and single answers.
 import { DriverError } from '../../errors.ts';
-import type { TraceColumn } from '../scpi-dialects.ts';
 import { requireAxis } from '../scpi-setup.ts';
+import type { TraceColumn } from '../scpi-templates.ts';
 import { decodeNumber, excerpt } from '../scpi-values.ts';
 
 /** Lines of an answer without those that repeat the question (an echo) and without empty ones. */

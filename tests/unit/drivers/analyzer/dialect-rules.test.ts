@@ -1,6 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import type { ScpiAnalyzerOptions } from '../../../../drivers/analyzer/scpi-analyzer.ts';
-import { dialectNamed, type ScpiDialect } from '../../../../drivers/analyzer/scpi-dialects.ts';
+import { dialectNamed } from '../../../../drivers/analyzer/scpi-dialects.ts';
+import type { ScpiDialect } from '../../../../drivers/analyzer/scpi-templates.ts';
 import { type AnalyzerBench, failureOf, preparedBench } from '../../../support/analyzer-bench.ts';
 
 const base = dialectNamed('numbered-parameter');

@@ -1,12 +1,7 @@
 import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
-import {
-  dialectNamed,
-  dialectNames,
-  fillTemplate,
-  problemsOf,
-  type ScpiDialect,
-} from '../../../../drivers/analyzer/scpi-dialects.ts';
+import { dialectNamed, dialectNames } from '../../../../drivers/analyzer/scpi-dialects.ts';
+import { fillTemplate, problemsOf, type ScpiDialect } from '../../../../drivers/analyzer/scpi-templates.ts';
 
 const bad = expect.objectContaining({ code: 'ANALYZER_BAD_DIALECT' });
 
