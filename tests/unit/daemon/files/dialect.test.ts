@@ -1,3 +1,4 @@
+import { readFileSync } from 'node:fs';
 import { describe, expect, it } from 'vitest';
 import { parseRangeFile } from '../../../../daemon/files/parse-range-file.ts';
 import { dialectNamed } from '../../../../drivers/analyzer/scpi-dialects.ts';
@@ -76,6 +77,12 @@ describe('a dialect in a range file', () => {
       fixed: { powerDbm: -7 },
       templates: { scanS21: ['scan {start} {stop} {points} 5'] },
     });
+  });
+
+  it('may be written as the README writes it', () => {
+    const blocks = readFileSync('README.md', 'utf8').matchAll(/```yaml\n( {2}dialect:\n[^`]+)```/g);
+    const examples = Array.from(blocks, ([, block = '']) => parse(...block.trimEnd().split('\n')));
+    expect(examples).toMatchObject([{ name: 'named-measurement' }, { base: 'scan-table' }]);
   });
 
   const templates = (line: string): string[] => [
