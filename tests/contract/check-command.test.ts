@@ -160,6 +160,20 @@ describe('a check before the night', () => {
     expect(desk.visitors).toBe(visitors);
   });
 
+  it('refuses what is no archive, and takes an empty file for none', async () => {
+    for (const [text, told] of [
+      ['no archive at all, but longer than a page of it would be\n'.repeat(100), 'cannot'],
+      ['', 'there is no archive at'],
+    ] as const) {
+      await desk.write('nightcut.sqlite', text);
+      const { exitCode, document } = await checked('pattern.plan.yaml');
+      expect(exitCode).toBe(1);
+      const finding = document.checks.find((check) => check.subject === 'gain-reference');
+      expect(finding).toMatchObject({ verdict: 'no-go', text: expect.stringContaining(told) });
+      expect(await readFile(desk.archivePath, 'utf8')).toBe(text);
+    }
+  });
+
   it('says so when the folder of the archive is not there', async () => {
     await desk.write('bare.plan.yaml', patternPlanText({ gainReference: 'none' }));
     const archive = desk.path('gone/a.sqlite');
