@@ -174,11 +174,23 @@ function slowestFeed(
  * Throws POSITIONER_OUTSIDE_TRAVEL rather than make a line that leads outside.
  */
 export function motionLine(axes: readonly AxisSetup[], toDeg: Position, feedUnitsPerMin: number): string {
+  return `G21 G90 G94 G53 ${plainMotionLine(axes, toDeg, feedUnitsPerMin)}`;
+}
+
+/**
+ * The same for controllers that take one command to a line: the modes go ahead of it, each on its own.
+ * Throws POSITIONER_OUTSIDE_TRAVEL.
+ */
+export function plainMotionLine(
+  axes: readonly AxisSetup[],
+  toDeg: Position,
+  feedUnitsPerMin: number,
+): string {
   const words = axes.flatMap((axis) => {
     const targetDeg = toDeg[axis.name];
     return targetDeg === undefined ? [] : [`${axis.word}${fixedNotation(unitsInside(axis, targetDeg))}`];
   });
-  return `G21 G90 G94 G53 G1 ${words.join(' ')} F${fixedNotation(Math.max(feedUnitsPerMin, 0.01))}`;
+  return `G1 ${words.join(' ')} F${fixedNotation(Math.max(feedUnitsPerMin, 0.01))}`;
 }
 
 /** The target on the grid of what can be written, rounded inwards where rounding would step over a limit. */
