@@ -9,16 +9,26 @@ import { ScpiInstrument, type ScpiInstrumentOptions } from './analyzer/scpi-inst
 import { FaultInjector } from './faults/fault-injector.ts';
 import { InstrumentHooks } from './faults/instrument-hooks.ts';
 import { type ControllerOptions, RealtimeStatusController } from './positioner/controller.ts';
+import type { SimulatedController } from './positioner/simulated-controller.ts';
+import {
+  PositionReportController,
+  type ReportControllerOptions,
+} from './positioner-report/report-controller.ts';
 import { stream } from './random.ts';
 import { type Mounted, Scene } from './scene/scene.ts';
 import type { SceneDescription } from './scene/scene-description.ts';
 import { type FrequencyTruth, type MatchTruth, matchTruth, truthAt } from './scene/truth.ts';
 
+/** Without a family it is `realtime-status`. */
+export type ControllerDescription =
+  | (ControllerOptions & { family?: 'realtime-status' })
+  | (ReportControllerOptions & { family: 'position-report' });
+
 export interface BenchDescription {
   /** Its seed also decides the sizes of faults. */
   scene?: SceneDescription;
   analyzer?: Omit<ScpiInstrumentOptions, 'clock' | 'measure'>;
-  positioner?: ControllerOptions;
+  positioner?: ControllerDescription;
   /** From a power cut of the analyzer until it takes visitors again. */
   analyzerBootMs?: number;
 }
@@ -43,7 +53,7 @@ const usualBootMs = 3000;
 export class SimulatedBench {
   readonly scene: Scene;
   readonly instrument: ScpiInstrument;
-  readonly controller: RealtimeStatusController;
+  readonly controller: SimulatedController;
   readonly faults: FaultInjector;
   readonly #clock: Clock;
   readonly #listeners: LinkListener[] = [];
@@ -53,7 +63,7 @@ export class SimulatedBench {
   constructor(clock: Clock, description: BenchDescription = {}) {
     this.#clock = clock;
     this.scene = new Scene(description.scene, clock.monotonicMs());
-    this.controller = new RealtimeStatusController(clock, description.positioner);
+    this.controller = controllerOf(clock, description.positioner);
     this.instrument = new ScpiInstrument({
       clock,
       measure: measureScene(this.scene, (ms) => this.controller.poseAt(ms)),
@@ -126,6 +136,12 @@ export class SimulatedBench {
     });
     this.instrument.accept(visitor);
   }
+}
+
+function controllerOf(clock: Clock, description: ControllerDescription = {}): SimulatedController {
+  return description.family === 'position-report'
+    ? new PositionReportController(clock, description)
+    : new RealtimeStatusController(clock, description);
 }
 
 async function closeAll(visitors: ReadonlySet<Link>): Promise<void> {

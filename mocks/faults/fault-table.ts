@@ -1,13 +1,13 @@
 // Everything that can be made to go wrong on the simulated bench, one entry each. Adding a fault is adding an
 // entry; when it strikes is the injector's business. Sizes are drawn from the random stream handed in, so that
 // a seed tells the whole story.
-import type { RealtimeStatusController } from '../positioner/controller.ts';
+import type { SimulatedController } from '../positioner/simulated-controller.ts';
 import type { RandomStream } from '../random.ts';
 import type { InstrumentHooks } from './instrument-hooks.ts';
 
 /** What a fault may lay hands on. */
 export interface FaultTargets {
-  controller: RealtimeStatusController;
+  controller: SimulatedController;
   hooks: InstrumentHooks;
   powerCycleInstrument: () => void;
   dropInstrumentVisitors: () => void;

@@ -7,7 +7,8 @@ import type { Link } from '../../drivers/link/link.ts';
 import type { MemoryPortOptions } from '../../drivers/link/memory.ts';
 import { TcpLink } from '../../drivers/link/tcp.ts';
 import { GcodePositioner } from '../../drivers/positioner/gcode-positioner.ts';
-import type { AxisSetup } from '../../drivers/positioner/positioner.ts';
+import type { AxisSetup, Positioner } from '../../drivers/positioner/positioner.ts';
+import { ReportPositioner } from '../../drivers/positioner/report-positioner.ts';
 import { AcceleratedClock } from '../../mocks/accelerated-clock.ts';
 import { stream } from '../../mocks/random.ts';
 import { type BenchDescription, SimulatedBench } from '../../mocks/simulated-bench.ts';
@@ -152,6 +153,14 @@ export function analyzerOn(
   });
 }
 
-export function positionerOn(at: ReachableBench, axes: readonly AxisSetup[]): GcodePositioner {
-  return new GcodePositioner(at.link('positioner'), at.clock, { axes });
+export const families = ['realtime-status', 'position-report'] as const;
+export type Family = (typeof families)[number];
+
+export function positionerOn(
+  at: ReachableBench,
+  axes: readonly AxisSetup[],
+  family: Family = 'realtime-status',
+): Positioner {
+  const Driver = family === 'position-report' ? ReportPositioner : GcodePositioner;
+  return new Driver(at.link('positioner'), at.clock, { axes });
 }
