@@ -1,9 +1,11 @@
 // A serial line by the serialport binding. Opened exclusively, without touching the modem lines beyond what
 // opening does (a pty has none). Traps it knows: a device that is unplugged closes without an error; a write
-// on a closed port never calls back; a peer that merely closes gives no sign at all, so deadlines find it.
+// on a closed port never calls back; a peer that merely closes gives no sign at all, so deadlines find it; a
+// device that goes before the first read is read as empty for ever, so its file is looked for as well.
+import { access } from 'node:fs/promises';
 import { type Observable, Subject } from 'rxjs';
 import { SerialPort } from 'serialport';
-import type { Clock } from '../clock.ts';
+import type { Cancel, Clock } from '../clock.ts';
 import { DriverError } from '../errors.ts';
 import type { Link, LinkClosed } from './link.ts';
 
@@ -11,6 +13,7 @@ const openTimeoutMs = 5_000;
 /** Beyond the time the bytes take on the wire; a line that is held by flow control never ends. */
 const writeSlackMs = 3_000;
 const bitsPerByte = 10;
+const presenceMs = 500;
 
 export interface SerialSettings {
   /** Device file, best the one by the adapter's own identity: /dev/serial/by-id/…, which a replug keeps. */
@@ -28,6 +31,7 @@ export class SerialLink implements Link {
   readonly #onTheirWay = new Set<(error: DriverError) => void>();
   #port: SerialPort | undefined;
   #closing = false;
+  #endWatch: Cancel = () => {};
 
   constructor(settings: SerialSettings, clock: Clock) {
     this.name = `serial://${settings.path}?baud=${settings.baud}`;
@@ -115,11 +119,28 @@ export class SerialLink implements Link {
       else if (error?.disconnected) this.#drop({ by: 'remote', cause: error });
       else this.#drop(cause ? { by: 'error', cause } : { by: 'remote' });
     });
+    this.#watchPresence(port);
+  }
+
+  #watchPresence(port: SerialPort): void {
+    this.#endWatch = this.#clock.at(this.#clock.monotonicMs() + presenceMs, () => {
+      access(this.#settings.path).then(
+        () => {
+          if (this.#port === port) this.#watchPresence(port);
+        },
+        () => {
+          if (this.#port !== port) return;
+          this.#drop({ by: 'remote' });
+          port.close(() => {});
+        },
+      );
+    });
   }
 
   #drop(news: LinkClosed): void {
     if (!this.#port) return;
     this.#port = undefined;
+    this.#endWatch();
     for (const fail of [...this.#onTheirWay]) fail(this.#notOpen('closed while bytes were on their way'));
     this.#closed.next(news);
   }

@@ -37,7 +37,8 @@ export async function ptyPair(): Promise<PtyPair> {
   };
   const unplug = async (): Promise<void> => {
     const gone = socat;
-    if (!gone || gone.exitCode !== null) return;
+    socat = undefined;
+    if (!gone || gone.exitCode !== null || gone.signalCode !== null) return;
     await new Promise<void>((resolve) => {
       gone.once('exit', () => resolve());
       gone.kill('SIGKILL');
