@@ -16,7 +16,7 @@ export interface ScanConsoleOptions {
 
 export interface ConsoleFaults {
   /** Changes what is printed after a line, or prints nothing at all (undefined), also no prompt. */
-  onPrint?: (text: string, line: string) => string | undefined;
+  onPrint?: (text: string, line: string) => string | undefined | Promise<string | undefined>;
 }
 
 export class ScanConsole {
@@ -86,7 +86,7 @@ export class ScanConsole {
     for (let line = this.#lines.shift(); line !== undefined; line = this.#lines.shift()) {
       const answer = await executeLine(this.state, line);
       const text = [line, ...answer].map((each) => `${each}\r\n`).join('') + consolePrompt;
-      const printed = this.faults.onPrint ? this.faults.onPrint(text, line) : text;
+      const printed = this.faults.onPrint ? await this.faults.onPrint(text, line) : text;
       if (printed !== undefined) this.#print(printed);
     }
     this.#isBusy = false;

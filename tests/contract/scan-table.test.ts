@@ -226,6 +226,74 @@ describe('an analyzer with a command tree of its own', () => {
   });
 });
 
+type Strike = (bench: ConsoleBench, text: string) => string | undefined | Promise<string | undefined>;
+
+const strikes: [string, Strike][] = [
+  ['silence', () => undefined],
+  ['garbage', () => 'x\x00\x7f?? 1 2\r\nok> '],
+  ['a lone prompt', () => 'ok> '],
+  ['half of it', (_, text) => text.slice(0, text.length / 2)],
+  ['twice of it', (_, text) => text + text],
+  ['a boot text in front', (_, text) => `boot 1.0\r\nok> ${text}`],
+  [
+    'much later',
+    async ({ clock }, text) => {
+      await clock.sleep(20_000);
+      return text;
+    },
+  ],
+  [
+    'with a power cut',
+    async ({ instrument }) => {
+      await instrument.powerCycle();
+      return undefined;
+    },
+  ],
+];
+
+it.each(strikes)(
+  'an answer struck by %s: an error or a true trace, whichever answer it is',
+  async (_, strike) => {
+    // The empty line, two of the identity, two of the settings, and four of each of three sweeps.
+    const answersOfASession = 17;
+    let failures = 0;
+    for (let struck = 1; struck <= answersOfASession; struck += 1) {
+      const bench = consoleBench();
+      const { clock, analyzer, instrument } = bench;
+      let answers = 0;
+      instrument.faults.onPrint = (text) => {
+        answers += 1;
+        return answers === struck ? strike(bench, text) : text;
+      };
+      const insist = async (act: () => Promise<unknown>): Promise<void> => {
+        for (let tried = 0; ; tried += 1) {
+          try {
+            await act();
+            return;
+          } catch (error) {
+            if (!(error instanceof DriverError) || tried === 20) throw error;
+            failures += 1;
+            await clock.run(clock.sleep(2000));
+            await clock.run(analyzer.recover()).catch((again: unknown) => {
+              if (!(again instanceof DriverError)) throw again;
+            });
+          }
+        }
+      };
+      await insist(() => clock.run(analyzer.identify()));
+      await insist(() => clock.run(analyzer.prepare(setup)));
+      // What is on the mast changes before every sweep: an old table cannot pass for a new one.
+      for (const mounted of ['aut', 'reference', 'aut'] as const) {
+        bench.scene.mount(mounted);
+        await insist(() => expectScene(bench));
+      }
+      expect(answers).toBeGreaterThanOrEqual(struck);
+      await clock.run(analyzer.close());
+    }
+    expect(failures).toBeGreaterThan(0);
+  },
+);
+
 const ranges: ConsoleRange[] = [];
 afterEach(async () => {
   for (const range of ranges.splice(0)) await range.close();

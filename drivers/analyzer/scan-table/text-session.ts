@@ -43,6 +43,8 @@ export class TextSession {
   readonly #options: TextSessionOptions;
   #pending: Pending | undefined;
   #isListening = false;
+  /** Something came, since it was last looked, that no question explains. */
+  #heardUnasked = false;
   #doubt: string | undefined = 'it was never opened';
 
   constructor(link: Link, clock: Clock, options: TextSessionOptions) {
@@ -69,6 +71,11 @@ export class TextSession {
     this.#doubt ??= because;
   }
 
+  #wonder(because: string): void {
+    this.#heardUnasked = true;
+    this.distrust(because);
+  }
+
   /** Lines of the answer without echo and prompt. Throws ANALYZER_NOT_ANSWERING, ANALYZER_OUT_OF_STEP, LINK_CLOSED … */
   ask(question: TextQuestion): Promise<string[]> {
     if (this.#doubt === undefined) return this.#exchange(question);
@@ -92,18 +99,22 @@ export class TextSession {
     await this.#link.open(signal);
     await this.shout('');
     for (const message of urgent) await this.shout(message);
+    this.#doubt = 'step is not proven yet';
     let before: string | undefined;
     for (let asked = 0; asked < identityAsksAtMost; asked += 1) {
       this.#isListening = false;
       await this.#clock.sleep(quietMs, signal);
-      this.#doubt = undefined;
+      this.#heardUnasked = false;
       const lines = await this.#exchange({ message: question, lines: 1, signal });
       const answer = lines.join('\n');
       await this.#clock.sleep(quietMs, signal);
-      if (answer !== '' && answer === before && this.inStep) return lines;
+      if (!this.#link.isOpen) throw new DriverError('LINK_CLOSED', `${this.#link.name} was closed`);
+      if (answer !== '' && answer === before && !this.#heardUnasked) {
+        this.#doubt = undefined;
+        return lines;
+      }
       before = answer;
     }
-    this.distrust('its answers do not agree');
     throw new DriverError(
       'ANALYZER_OUT_OF_STEP',
       `'${question}' was asked ${identityAsksAtMost} times and no two answers in a row agree ('${excerpt(before ?? '')}')`,
@@ -152,7 +163,10 @@ export class TextSession {
       const isSilent = this.#options.prompt === undefined && question.lines === 0;
       this.shout(message).then(
         () => isSilent && finish({ lines: [] }),
-        (error: unknown) => finish({ error }),
+        (error: unknown) => {
+          this.distrust(`'${message}' could not be sent`);
+          finish({ error });
+        },
       );
     });
   }
@@ -163,7 +177,7 @@ export class TextSession {
     const text = Buffer.from(bytes).toString('latin1');
     const pending = this.#pending;
     if (!pending) {
-      if (text.trim() !== '') this.distrust(`text came that nobody asked for ('${excerpt(text.trim())}')`);
+      if (text.trim() !== '') this.#wonder(`text came that nobody asked for ('${excerpt(text.trim())}')`);
       return;
     }
     pending.text += text;
@@ -185,7 +199,7 @@ export class TextSession {
     const lines = linesOf(text.slice(0, end + 1), question.message);
     if (prompt !== undefined) return rest.trim() === prompt.trim() ? lines : undefined;
     if (lines.length < question.lines) return undefined;
-    if (lines.length > question.lines || rest.trim() !== '') this.distrust('more came than was asked for');
+    if (lines.length > question.lines || rest.trim() !== '') this.#wonder('more came than was asked for');
     return lines.slice(0, question.lines);
   }
 }
