@@ -2,8 +2,8 @@
 //
 //   G90  G1 …  │ the planned time passes; positions are asked for │  M400 … ok  │  M114 → fresh position
 //
-// The barrier leaves only when the plan says that the move must be about over: on builds without an emergency
-// parser a stop waits behind a barrier, and would wait for the whole move.
+// The barrier leaves only when the plan says that the move must be about over: until then the controller answers
+// what it is asked, and nothing stands before a stop on builds that read it in turn.
 import { DriverError, isDriverError } from '../errors.ts';
 import type { AxisSetup, Position } from './positioner.ts';
 import { askPosition, barrier, lineWithinMs, type ReportParts, samePlace, sayTwice } from './report-parts.ts';

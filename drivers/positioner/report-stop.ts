@@ -1,12 +1,13 @@
 // Bringing everything to rest, and proof of it. What each level costs on a position-report controller:
 //
-//   at rest     M400, two positions alike                          nothing
-//   moving      M410: pulses end without a ramp                    the reference: the shaft may have run on
-//   homing, or no proof of rest, where an emergency parser is told
-//               M112: the controller halts                         its reset button
+//   at rest     M400, two positions alike                      nothing
+//   moving      M410: pulses end without a ramp                the reference: the shaft may have run on
+//   homing      M410 as well, which some builds answer by      the reference, and perhaps the reset button
+//               halting, as they do where a switch is missing
+//   no proof    M112: the controller halts                     its reset button
 //
-// Without an emergency parser M410 is read in turn: at once in a move, since no barrier waits there before its
-// end, but only after the cycle in homing. There is no gentle stop of a move under way in this family.
+// Without an emergency parser these are read when their line is taken: at once while fewer lines wait than the
+// queue holds, and we never have more than one. There is no gentle stop of a move under way in this family.
 import { DriverError, isDriverError } from '../errors.ts';
 import type { StopReport } from './positioner.ts';
 import { longestMotionMs, type ReportParts, restingPlace } from './report-parts.ts';
@@ -17,6 +18,8 @@ const quickStop = 'M410';
 const emergencyStop = 'M112';
 /** The `ok` of a quick stop comes after a second. */
 const quickStopMs = 6_000;
+/** A barrier is answered at once where nothing moves. */
+const restWithinMs = 1_500;
 const haltMs = 2_000;
 
 /** See Positioner.stop. Sends its first bytes before it first yields. */
@@ -67,15 +70,27 @@ async function comeToRest(
   if (parts.sender.halted !== undefined) return halted(parts, calledMs);
   const limitMs = parts.stopsAtOnce ? quickStopMs : longestMotionMs(parts) * 1.5 + quickStopMs;
   try {
-    if (underway !== 'nothing') await parts.sender.resync(undefined, limitMs);
+    if (underway !== 'nothing') await makeSureOfQuickStop(parts, limitMs);
     const position = await restingPlace(parts, limitMs);
     return { position, haltMs: parts.clock.monotonicMs() - calledMs };
   } catch (error) {
     if (parts.sender.halted !== undefined) return halted(parts, calledMs);
     // A restart ends every motion; where it left the axes the controller does not know.
     if (isDriverError(error, 'POSITIONER_RESTARTED')) return afterRestart(parts, calledMs);
-    if (underway === 'nothing' || !parts.stopsAtOnce || !parts.link.isOpen) throw error;
+    if (underway === 'nothing' || !parts.link.isOpen) throw error;
     return await killed(parts, calledMs, error);
+  }
+}
+
+/** The quick stop goes without a number, and may be lost: what still moves is stopped again. */
+async function makeSureOfQuickStop(parts: ReportParts, limitMs: number): Promise<void> {
+  await parts.sender.resync(undefined, limitMs);
+  try {
+    await parts.sender.line('M400', { withinMs: restWithinMs, limitMs: restWithinMs });
+  } catch (error) {
+    if (!isDriverError(error, 'POSITIONER_NOT_ANSWERING', 'POSITIONER_STALLED')) throw error;
+    parts.sender.urgent(quickStop);
+    await parts.sender.resync(undefined, limitMs);
   }
 }
 

@@ -37,13 +37,18 @@ export interface ReportRig {
   shaftDeg: () => number;
 }
 
+/** `hears`: whether a line of the controller gets through to the driver. */
 export function reportRig(
   controllerOptions: ReportControllerOptions = {},
   options: Partial<ReportPositionerOptions> = {},
+  hears: (line: string) => boolean = () => true,
 ): ReportRig {
   const clock = new SimulatedClock();
   const controller = new PositionReportController(clock, controllerOptions);
-  const port = new MemoryPort(clock, 'memory://turntable', { latencyMs: 1 });
+  const port = new MemoryPort(clock, 'memory://turntable', {
+    latencyMs: 1,
+    cut: (bytes) => (hears(Buffer.from(bytes).toString('latin1').trim()) ? [bytes] : []),
+  });
   port.listen((visitor) => controller.connect(visitor));
   const traffic: string[] = [];
   const positioner = new ReportPositioner(port.link(), clock, {
