@@ -70,6 +70,7 @@ async function executeWatched(
   const loop = new RunLoop(bench, archive, outside.clock, order);
   const log = openRunLog(`${archivePath}.log`);
   const progress = progressOn(outside.stderr);
+  if (outside.stderr.isTTY) outside.stderr.write('meeting analyzer and positioner …\n');
   const stop = new AbortController();
   const ignoreSignals = outside.onStopSignal(() => stop.abort());
   const watching = loop.events$.subscribe((event) => {

@@ -23,7 +23,7 @@ export interface OrderDraft {
 
 /** Throws PLAN_OUTSIDE_TRAVEL, PLAN_AXIS_UNKNOWN; for a reference run REFERENCE_MISSING, REFERENCE_DOES_NOT_FIT. */
 export function orderRun(range: RangeFile, plan: Plan): OrderDraft {
-  const { steps } = expandPlan(plan, range);
+  const { steps } = expandNamed(plan, range);
   if (plan.kind === 'reference') refuseUselessReference(range, plan);
   const { axes } = range.positioner;
   return {
@@ -50,6 +50,16 @@ export function orderRun(range: RangeFile, plan: Plan): OrderDraft {
       };
     },
   };
+}
+
+/** As `expandPlan`, the file named in what it refuses. */
+function expandNamed(plan: Plan, range: RangeFile): ReturnType<typeof expandPlan> {
+  try {
+    return expandPlan(plan, range);
+  } catch (error) {
+    if (!(error instanceof DaemonError)) throw error;
+    throw new DaemonError(error.code, `${plan.path}: ${error.message}`, error.facts, error);
+  }
 }
 
 /** Both the transmission and the match of the AUT are recorded in every sweep; a sample reads what it needs. */

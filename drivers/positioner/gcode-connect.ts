@@ -102,7 +102,9 @@ async function demandRest(parts: GcodeParts, first: StatusReport, signal?: Abort
   if ((report.state === 'Idle' || report.state === 'Alarm') && stands) return;
   throw new DriverError(
     'POSITIONER_BUSY_AT_CONNECT',
-    `${parts.link.name} is in ${report.stateText}: it was moving or held before we came`,
+    stands
+      ? `${parts.link.name} is in ${report.stateText}: it was moving or held before we came`
+      : `${parts.link.name}: its position changed while we watched: something else moves it`,
     { state: report.stateText, position: placeText(report) },
   );
 }
