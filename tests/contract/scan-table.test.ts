@@ -128,6 +128,13 @@ describe('an analyzer with a command tree of its own', () => {
     await expectScene(bench);
   });
 
+  it('refuses a setting that was not taken over', async () => {
+    const bench = await prepared();
+    bench.instrument.faults.onPrint = (text) => text.replace('bandwidth 1000 Hz', 'bandwidth 300 Hz');
+    const failure = await failureOf(bench, bench.analyzer.acquire());
+    expect(failure).toMatchObject({ code: 'ANALYZER_SETTING_DIFFERS', facts: { asked: 1000, got: 300 } });
+  });
+
   it('proves the grid by the frequency column', async () => {
     const bench = await prepared();
     bench.instrument.faults.onPrint = (text) => text.replace('\n850000000 ', '\n850100000 ');
@@ -139,6 +146,7 @@ describe('an analyzer with a command tree of its own', () => {
 
   it.each([
     ['a line is missing', (text: string) => text.replace(/\n840000000[^\n]*/, '')],
+    ['a line is too many', (text: string) => text.replace('ok> ', '930000000 0.1 0.1\r\nok> ')],
     ['a number is missing', (text: string) => text.replace(/\n(840000000 \S+)[^\n]*/, '\n$1\r')],
     ['a number is none', (text: string) => text.replace(/\n840000000 \S+/, '\n840000000 x')],
     ['it complains', () => 'scan 1 2 3 5\r\nno lock\r\nok> '],
@@ -147,7 +155,15 @@ describe('an analyzer with a command tree of its own', () => {
   ])('never takes a spoiled table for a trace: %s', async (_, spoil) => {
     const bench = await prepared();
     bench.instrument.faults.onPrint = (text, line) => (line.startsWith('scan') ? spoil(text) : text);
+    const lines: string[] = [];
+    const spoiled = bench.instrument.faults.onPrint;
+    bench.instrument.faults.onPrint = (text, line) => {
+      lines.push(line);
+      return spoiled(text, line);
+    };
     const { code } = await failureOf(bench, bench.analyzer.acquire());
+    // What cannot be read may be the answer to another question: step is proven anew.
+    expect(lines.slice(-2)).toEqual(['version', 'version']);
     expect(['ANALYZER_BAD_ANSWER', 'ANALYZER_NOT_ANSWERING']).toContain(code);
     bench.instrument.faults = {};
     await expectScene(bench);

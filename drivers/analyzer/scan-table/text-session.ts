@@ -42,7 +42,6 @@ export class TextSession {
   readonly #clock: Clock;
   readonly #options: TextSessionOptions;
   #pending: Pending | undefined;
-  #isListening = false;
   /** Something came, since it was last looked, that no question explains. */
   #heardUnasked = false;
   #doubt: string | undefined = 'it was never opened';
@@ -99,10 +98,8 @@ export class TextSession {
     await this.#link.open(signal);
     await this.shout('');
     for (const message of urgent) await this.shout(message);
-    this.#doubt = 'step is not proven yet';
     let before: string | undefined;
     for (let asked = 0; asked < identityAsksAtMost; asked += 1) {
-      this.#isListening = false;
       await this.#clock.sleep(quietMs, signal);
       this.#heardUnasked = false;
       const lines = await this.#exchange({ message: question, lines: 1, signal });
@@ -123,7 +120,6 @@ export class TextSession {
   }
 
   async close(because = 'it was closed by us'): Promise<void> {
-    this.#isListening = false;
     this.distrust(because);
     this.#pending?.finish({ error: new DriverError('LINK_CLOSED', `nothing is asked: ${because}`) });
     await this.#link.close();
@@ -133,7 +129,6 @@ export class TextSession {
     const { message, signal, timeoutMs = this.#options.answerTimeoutMs } = question;
     if (this.#pending) return Promise.reject(new Error('defect: two exchanges at a time on one session'));
     if (signal?.aborted) return Promise.reject(signal.reason);
-    this.#isListening = true;
     return new Promise((resolve, reject) => {
       let cancel = (): void => {};
       const onAbort = (): void => {
@@ -173,7 +168,6 @@ export class TextSession {
 
   #receive(bytes: Uint8Array): void {
     this.#options.onTraffic?.({ direction: 'received', bytes, monotonicMs: this.#clock.monotonicMs() });
-    if (!this.#isListening) return;
     const text = Buffer.from(bytes).toString('latin1');
     const pending = this.#pending;
     if (!pending) {

@@ -2,7 +2,13 @@ import { describe, expect, it } from 'vitest';
 import type { ScpiAnalyzerOptions } from '../../../../drivers/analyzer/scpi-analyzer.ts';
 import { dialectNamed } from '../../../../drivers/analyzer/scpi-dialects.ts';
 import type { ScpiDialect } from '../../../../drivers/analyzer/scpi-templates.ts';
-import { type AnalyzerBench, failureOf, preparedBench } from '../../../support/analyzer-bench.ts';
+import {
+  type AnalyzerBench,
+  analyzerBench,
+  failureOf,
+  preparedBench,
+  sampleSetup,
+} from '../../../support/analyzer-bench.ts';
 
 const base = dialectNamed('numbered-parameter');
 
@@ -102,6 +108,23 @@ describe('the columns of a trace', () => {
       facts: { asked: 800e6, got: 801e6 },
     });
   });
+});
+
+it.each([
+  ['"NC1,S11,NC2,S21"', true],
+  ['"NC2,S21,NC1,S11"', true],
+  ['"NC1,S11,NC2,S12"', false],
+  ['"NC1,S11"', false],
+  ['"NC1,S11,NC2,S21,MINE,S21"', false],
+  ['"NO CATALOG"', false],
+])('is content with the list of measurements %s: %s', async (list, isContent) => {
+  const templates = { ...base.templates, parameterListQuery: ':CALC{channel}:PAR:CAT?' };
+  const { clock, instrument, analyzer } = analyzerBench({ analyzer: { dialect: { ...base, templates } } });
+  instrument.twist = (message) => (message === ':CALC1:PAR:CAT?' ? { ignore: true, reply: list } : undefined);
+  await clock.run(analyzer.identify());
+  const work = clock.run(analyzer.prepare(sampleSetup));
+  if (isContent) await work;
+  else expect(await failureOf(work)).toMatchObject({ code: 'ANALYZER_SETTING_DIFFERS' });
 });
 
 it('has an output that is switched by 1 and 0', async () => {
