@@ -19,6 +19,8 @@ export interface RangeOptions {
   /** Home switches on both axes; else the controller's zero is believed. */
   homing?: 'switch' | 'none';
   trace?: string;
+  /** What stands behind `dialect:` of the analyzer. */
+  dialect?: string;
   /** Gear play of both axes in degrees. */
   gearPlayDeg?: number;
   wire?: MemoryPortOptions;
@@ -115,12 +117,12 @@ range: test meadow
 rangeLength: 6 m
 analyzer:
   link: tcp://127.0.0.1:1
-  dialect: numbered-parameter
+  dialect: ${options.dialect ?? 'numbered-parameter'}
   autPort: 1
   trace: ${options.trace ?? '{ format: real64, byteOrder: normal }'}
 positioner:
   link: tcp://127.0.0.1:2
-  family: realtime-status
+  family: ${options.bench.positioner?.family ?? 'realtime-status'}
   axes:
     azimuth:${axis('X')}
     elevation:${axis('Y')}
