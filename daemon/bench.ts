@@ -7,6 +7,8 @@ import type { Link } from '../drivers/link/link.ts';
 import { SerialLink } from '../drivers/link/serial.ts';
 import { TcpLink } from '../drivers/link/tcp.ts';
 import { GcodePositioner } from '../drivers/positioner/gcode-positioner.ts';
+import type { Positioner } from '../drivers/positioner/positioner.ts';
+import { ReportPositioner } from '../drivers/positioner/report-positioner.ts';
 import type { LinkAddress, RangeFile } from './files/range-file.ts';
 import type { Bench } from './run/safe-stop.ts';
 
@@ -23,15 +25,18 @@ export function makeBench(range: RangeFile, clock: Clock, makeLink: LinkMaker = 
   const { analyzer, positioner } = range;
   return {
     analyzer: makeAnalyzer(analyzer, clock, makeLink(analyzer.link, 'analyzer')),
-    positioner: new GcodePositioner(makeLink(positioner.link, 'positioner'), clock, {
-      axes: positioner.axes,
-    }),
+    positioner: makePositioner(positioner, clock, makeLink(positioner.link, 'positioner')),
   };
 }
 
 function makeAnalyzer({ dialect, trace }: RangeFile['analyzer'], clock: Clock, link: Link): Analyzer {
   if ('base' in dialect) return new ScanTableAnalyzer(link, clock, { dialect });
   return new ScpiAnalyzer(link, clock, { dialect, traceFormat: trace.format, byteOrder: trace.byteOrder });
+}
+
+function makePositioner({ family, axes }: RangeFile['positioner'], clock: Clock, link: Link): Positioner {
+  const Driver = family === 'position-report' ? ReportPositioner : GcodePositioner;
+  return new Driver(link, clock, { axes });
 }
 
 export async function closeBench(bench: Bench): Promise<void> {

@@ -15,6 +15,7 @@ interface SceneOptions {
 }
 
 interface ServeArguments extends SceneOptions {
+  controller: (typeof controllerFamilies)[number];
   gearPlay: number;
   accelerate: number;
   host: string;
@@ -29,6 +30,7 @@ interface TruthArguments extends SceneOptions {
   mounted: 'aut' | 'reference';
 }
 
+const controllerFamilies = ['realtime-status', 'position-report'] as const;
 const antennaKinds: AntennaDescription['kind'][] = [
   'yagi5',
   'dipole',
@@ -62,6 +64,11 @@ function build(around: MockSurroundings): Command {
     .helpCommand(false);
   const serveCommand = withScene(program.command('serve'))
     .description('Serve both devices over TCP until a stop signal or the line `quit`.')
+    .addOption(
+      new Option('--controller <family>', 'how the motion controller is spoken to')
+        .choices(controllerFamilies)
+        .default('realtime-status'),
+    )
     .option('--gear-play <deg>', 'gear play of every axis', decimal, 0)
     .option('--accelerate <factor>', 'how much faster than the world time runs', positive, 1)
     .option('--host <address>', 'where to listen', '127.0.0.1')
@@ -139,7 +146,7 @@ function benchOf(options: ServeArguments): BenchDescription {
   );
   return {
     scene: sceneOf(options),
-    positioner: { settings, mechanics: { X: axis, Y: axis, Z: axis } },
+    positioner: { family: options.controller, settings, mechanics: { X: axis, Y: axis, Z: axis } },
   };
 }
 

@@ -26,6 +26,9 @@ export interface ReferenceAntenna {
   sizeM?: number;
 }
 
+/** How a motion controller is spoken to: status reports in angle brackets, or `M114` behind an `M400`. */
+export type ControllerFamily = 'realtime-status' | 'position-report';
+
 export interface RangeFile {
   /** Absolute path and text as read. */
   path: string;
@@ -50,7 +53,7 @@ export interface RangeFile {
     /** Mean noise of the receiver without a signal, at the IF bandwidth it was read with. */
     noiseFloor?: { levelDbm: number; ifBandwidthHz: number };
   };
-  positioner: { link: LinkAddress; family: 'realtime-status'; axes: readonly RangeAxis[] };
+  positioner: { link: LinkAddress; family: ControllerFamily; axes: readonly RangeAxis[] };
   rangeAntenna: string;
   /** Largest dimension of the range antenna, and its gain as far as it is known. */
   rangeAntennaSizeM?: number;

@@ -97,7 +97,7 @@ export const rangeSchema = keys({
   }),
   positioner: keys({
     link,
-    family: choice(['realtime-status'], { 'position-report': 'that family is not yet offered' }),
+    family: choice(['realtime-status', 'position-report']),
     axes: z
       .record(axisName(), axis, { error: 'a mapping of axes by name, such as azimuth' })
       .meta({ minProperties: 1 }),

@@ -213,11 +213,16 @@ const wrong: [number, string | undefined, number, string][] = [
   ],
   [
     15,
-    '  family: position-report',
+    '  family: position-reports',
     15,
-    'positioner.family: expected realtime-status; found "position-report" (that family is not yet offered)',
+    'positioner.family: expected one of realtime-status, position-report; found "position-reports"',
   ],
-  [15, '  family: constructor', 15, 'positioner.family: expected realtime-status; found "constructor"'],
+  [
+    15,
+    '  family: constructor',
+    15,
+    'positioner.family: expected one of realtime-status, position-report; found "constructor"',
+  ],
   [17, '    Azimuth:', 17, 'positioner.axes.Azimuth: expected an axis name such as azimuth'],
   [17, '    constructor:', 17, 'positioner.axes.constructor: expected an axis name such as azimuth'],
   [
