@@ -223,6 +223,22 @@ describe('an analyzer with a command tree of its own', () => {
     await expectScene(bench);
   });
 
+  it('is waited for until a long scan is over, before the source counts as off', async () => {
+    const bench = await prepared();
+    const { clock, analyzer, instrument } = bench;
+    await clock.run(analyzer.prepare({ ...setup, points: 401, ifBandwidthHz: 100 }));
+    const scanning = analyzer.acquire();
+    scanning.catch(() => {});
+    await clock.run(clock.sleep(100));
+    expect(instrument.isScanning).toBe(true);
+    const begunMs = clock.monotonicMs();
+    await clock.run(analyzer.source(false));
+    expect(instrument.isScanning).toBe(false);
+    // 401 points of 10.1 ms.
+    expect(clock.monotonicMs() - begunMs).toBeGreaterThan(3900);
+    expect((await failureOf(bench, scanning)).code).toBe('ANALYZER_INTERRUPTED');
+  });
+
   it('gives up when its caller does', async () => {
     const bench = await prepared();
     const patience = new AbortController();

@@ -53,6 +53,7 @@ type Work<T> = (stop: AbortSignal) => Promise<T>;
 export class ScanTableAnalyzer implements Analyzer {
   readonly #dialect: ScanTableDialect;
   readonly #clock: Clock;
+  readonly #answerTimeoutMs: number;
   readonly #session: TextSession;
   readonly #queue = new OperationQueue();
   readonly #known = new KnownInstrument();
@@ -78,11 +79,12 @@ export class ScanTableAnalyzer implements Analyzer {
       });
     }
     this.#dialect = dialect;
+    this.#answerTimeoutMs = options.answerTimeoutMs ?? defaultAnswerTimeoutMs;
     this.#clock = clock;
     this.#session = new TextSession(link, clock, {
       prompt: dialect.prompt,
       lineEnd: lineEnds[dialect.sendsLineEnd],
-      answerTimeoutMs: options.answerTimeoutMs ?? defaultAnswerTimeoutMs,
+      answerTimeoutMs: this.#answerTimeoutMs,
       onTraffic: options.onTraffic,
     });
   }
@@ -183,7 +185,9 @@ export class ScanTableAnalyzer implements Analyzer {
 
   async #open(stop: AbortSignal, urgent: readonly string[] = []): Promise<AnalyzerIdentity> {
     const question = this.#message('identityQuery');
-    return this.#meet(await this.#session.resynchronize(question, urgent, stop));
+    const scanMs = this.#setup ? 1.5 * estimatedScanMs(this.#setup) : 0;
+    const timeoutMs = this.#answerTimeoutMs + scanMs;
+    return this.#meet(await this.#session.resynchronize(question, { urgent, timeoutMs, signal: stop }));
   }
 
   #meet(lines: readonly string[]): AnalyzerIdentity {

@@ -25,6 +25,13 @@ export interface TextQuestion {
   signal?: AbortSignal | undefined;
 }
 
+interface ReopenText {
+  /** Lines that leave first. */
+  urgent: readonly string[];
+  timeoutMs: number;
+  signal: AbortSignal | undefined;
+}
+
 interface Pending {
   question: TextQuestion;
   text: string;
@@ -33,6 +40,8 @@ interface Pending {
 }
 
 const shortAnswer = 4096;
+/** The table of a scan that was given up may still come in front of the first answer. */
+const staleTable = 4_000_000;
 const pauseBeforeReopeningMs = 200;
 const quietMs = 100;
 const identityAsksAtMost = 5;
@@ -90,8 +99,11 @@ export class TextSession {
     return this.#link.write(bytes);
   }
 
-  /** Opens anew and asks `question` until two answers in a row agree; returns that answer's lines. */
-  async resynchronize(question: string, urgent: readonly string[], signal?: AbortSignal): Promise<string[]> {
+  /**
+   * Opens anew and asks `question` until two answers in a row agree; returns that answer's lines. `timeoutMs`: an
+   * instrument that still scans answers only then.
+   */
+  async resynchronize(question: string, { urgent, timeoutMs, signal }: ReopenText): Promise<string[]> {
     const wasOpen = this.#link.isOpen;
     await this.close('the session is opened anew');
     if (wasOpen && urgent.length === 0) await this.#clock.sleep(pauseBeforeReopeningMs, signal);
@@ -102,7 +114,13 @@ export class TextSession {
     for (let asked = 0; asked < identityAsksAtMost; asked += 1) {
       await this.#clock.sleep(quietMs, signal);
       this.#heardUnasked = false;
-      const lines = await this.#exchange({ message: question, lines: 1, signal });
+      const lines = await this.#exchange({
+        message: question,
+        lines: 1,
+        timeoutMs,
+        maxChars: staleTable,
+        signal,
+      });
       const answer = lines.join('\n');
       await this.#clock.sleep(quietMs, signal);
       if (!this.#link.isOpen) throw new DriverError('LINK_CLOSED', `${this.#link.name} was closed`);
@@ -190,8 +208,10 @@ export class TextSession {
     const { prompt } = this.#options;
     const end = Math.max(text.lastIndexOf('\n'), text.lastIndexOf('\r'));
     const rest = text.slice(end + 1);
+    // Before the lines are parted: an answer comes in many pieces, and most of them are not its end.
+    if (prompt !== undefined && rest.trim() !== prompt.trim()) return undefined;
     const lines = linesOf(text.slice(0, end + 1), question.message);
-    if (prompt !== undefined) return rest.trim() === prompt.trim() ? lines : undefined;
+    if (prompt !== undefined) return lines;
     if (lines.length < question.lines) return undefined;
     if (lines.length > question.lines || rest.trim() !== '') this.#wonder('more came than was asked for');
     return lines.slice(0, question.lines);
