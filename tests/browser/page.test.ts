@@ -264,7 +264,10 @@ describe('the built page', () => {
 
   it('is worked by the keyboard alone', async () => {
     const { page } = await open();
+    await page.locator('input[type="file"]').waitFor();
+    await page.bringToFront();
     await page.keyboard.press('Tab');
+    expect(await page.evaluate('document.activeElement.type')).toBe('file');
     const [chooser] = await Promise.all([page.waitForEvent('filechooser'), page.keyboard.press('Enter')]);
     await chooser.setFiles(file);
     await page.locator('section.pattern').waitFor();
