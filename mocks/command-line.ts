@@ -15,6 +15,7 @@ interface SceneOptions {
 }
 
 interface ServeArguments extends SceneOptions {
+  analyzer: (typeof commandTrees)[number];
   controller: (typeof controllerFamilies)[number];
   gearPlay: number;
   accelerate: number;
@@ -30,6 +31,7 @@ interface TruthArguments extends SceneOptions {
   mounted: 'aut' | 'reference';
 }
 
+const commandTrees = ['numbered-parameter', 'named-measurement', 'selected-trace'] as const;
 const controllerFamilies = ['realtime-status', 'position-report'] as const;
 const antennaKinds: AntennaDescription['kind'][] = [
   'yagi5',
@@ -64,6 +66,11 @@ function build(around: MockSurroundings): Command {
     .helpCommand(false);
   const serveCommand = withScene(program.command('serve'))
     .description('Serve both devices over TCP until a stop signal or the line `quit`.')
+    .addOption(
+      new Option('--analyzer <dialect>', 'how the analyzer is spoken to')
+        .choices(commandTrees)
+        .default('numbered-parameter'),
+    )
     .addOption(
       new Option('--controller <family>', 'how the motion controller is spoken to')
         .choices(controllerFamilies)
@@ -146,6 +153,7 @@ function benchOf(options: ServeArguments): BenchDescription {
   );
   return {
     scene: sceneOf(options),
+    analyzer: { commandTree: options.analyzer },
     positioner: { family: options.controller, settings, mechanics: { X: axis, Y: axis, Z: axis } },
   };
 }

@@ -99,6 +99,14 @@ async function served(...more: string[]): Promise<Session & { analyzer: Client; 
 }
 
 describe('nightcut-mock serve', () => {
+  it.each([
+    ['named-measurement', 'CALC:PAR:CAT?', '"FIRST,S11"'],
+    ['selected-trace', 'CALC:MEAS1:DEF?', '"S11"'],
+  ])('speaks the commands of %s', async (dialect, question, answer) => {
+    const { analyzer } = await served('--analyzer', dialect);
+    expect(await analyzer.ask(`${question}\n`, /\n$/)).toContain(answer);
+  });
+
   it('moves for a bare client and tells the truth about arrival', async () => {
     const { positioner, code, stdin } = await served('--accelerate', '20');
     await positioner.ask('\n', /ok\r\n$/);
@@ -186,6 +194,7 @@ describe('nightcut-mock usage', () => {
     ['serve', '--what'],
     ['serve', 'more'],
     ['serve', '--antenna', 'broomstick'],
+    ['serve', '--analyzer', 'hand-made'],
     ['serve', '--analyzer-port', '70000'],
     ['serve', '--accelerate', '0'],
     ['serve', '--seed', 'x'],
