@@ -1,5 +1,6 @@
 // The position-report driver against the simulated controller where the contract does not reach: builds without
 // options, damaged lines, restarts that nobody hears of, motors that would go off, switches that are never found.
+import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
 import { DriverError } from '../../../../drivers/errors.ts';
 import { MemoryPort } from '../../../../drivers/link/memory.ts';
@@ -79,6 +80,113 @@ describe('builds without options', () => {
     const barrierAt = rig.traffic.findIndex((line, index) => index > begun && line.includes('M400'));
     expect(begun).toBeGreaterThan(0);
     expect(barrierAt).toBeGreaterThan(later);
+  });
+});
+
+describe('an arrival', () => {
+  it('is none before the barrier: a move may take longer than what was told', async () => {
+    // The acceleration is not told, so that the plan is too short; the target is named from the start.
+    const rig = await readyReportRig(
+      { ...plainBuild, settings: { 120: 5 } },
+      {},
+      (line) => !line.includes('M201'),
+    );
+    const startedMs = rig.clock.monotonicMs();
+    await rig.run(rig.positioner.moveTo({ azimuth: 120 }));
+    // 2·√(120/5) s, against 4.1 s as planned.
+    expect(rig.clock.monotonicMs() - startedMs).toBeGreaterThan(9_700);
+    expect(rig.shaftDeg()).toBeCloseTo(120, 6);
+  });
+
+  it('survives answers that are lost or late, at every line of a move', async () => {
+    for (let nth = 0; nth < 16; nth += 1) {
+      for (const fault of ['lost', 'late'] as const) {
+        const rig = await readyReportRig();
+        let answers = 0;
+        rig.controller.answered$.subscribe(() => {
+          answers += 1;
+          if (answers !== nth) return;
+          if (fault === 'lost') rig.controller.loseAnswers(1);
+          else rig.controller.delayAnswers(1, 2_700);
+        });
+        await rig.run(rig.positioner.moveTo({ azimuth: 60 }));
+        expect(rig.shaftDeg(), `${fault} answer ${nth}`).toBeCloseTo(60, 6);
+        await rig.run(rig.positioner.moveTo({ azimuth: 20 }));
+        expect(rig.shaftDeg(), `${fault} answer ${nth}`).toBeCloseTo(20, 6);
+      }
+    }
+  });
+});
+
+it('never sends a motion outside travel, whatever is asked (invariant 1)', async () => {
+  const deg = fc.oneof(
+    fc.double({ min: -220, max: 220, noNaN: true }),
+    fc.constantFrom(-190, -188, 190, 188),
+  );
+  const axisArb = fc.record({
+    approachFrom: fc.constantFrom('below' as const, 'above' as const),
+    approachDeg: fc.constantFrom(0, 2, 30),
+    unitsPerDegree: fc.constantFrom(1, -1, 2.77777),
+  });
+  await fc.assert(
+    fc.asyncProperty(
+      axisArb,
+      fc.array(fc.tuple(deg, fc.boolean()), { maxLength: 5 }),
+      async (kind, steps) => {
+        const axis = { ...turntable, toleranceDeg: 0.1, rateDegPerS: 200, ...kind };
+        const rig = await readyReportRig({}, { axes: [axis] });
+        for (const [azimuth, throughApproach] of steps) {
+          await rig.run(rig.positioner.moveTo({ azimuth }, { throughApproach })).catch((error: unknown) => {
+            if (!(error instanceof DriverError) || error.code !== 'POSITIONER_OUTSIDE_TRAVEL') throw error;
+          });
+        }
+        for (const line of rig.traffic) {
+          const units = /^> N\d+ G1 X(-?[\d.]+) F[\d.]+\*\d+$/.exec(line)?.[1];
+          if (line.includes(' G1 ')) expect(units, line).toBeDefined();
+          if (units === undefined) continue;
+          expect(Math.abs(Number(units) / axis.unitsPerDegree)).toBeLessThanOrEqual(190 + 1e-9);
+        }
+      },
+    ),
+    { numRuns: 40 },
+  );
+});
+
+describe('a zero that may be false', () => {
+  it('is believed after a restart only when somebody vouches for it', async () => {
+    for (const believeZeroAfterRestart of [false, true]) {
+      const rig = await readyReportRig({}, { believeZeroAfterRestart });
+      await rig.run(rig.positioner.moveTo({ azimuth: 90 }));
+      rig.controller.restart();
+      await rig.run(rig.clock.sleep(500));
+      expect(rig.positioner.referenceValid).toBe(false);
+      await rig.run(rig.positioner.home()).catch(() => {});
+      expect(rig.positioner.referenceValid).toBe(believeZeroAfterRestart);
+    }
+  });
+
+  it('is none where the count went on: a link that was cut at rest costs nothing', async () => {
+    const rig = await readyReportRig();
+    await rig.run(rig.positioner.moveTo({ azimuth: 90 }));
+    await rig.run(rig.controller.dropVisitors());
+    expect((await failure(rig, rig.positioner.moveTo({ azimuth: 80 }))).code).toBe('LINK_CLOSED');
+    await rig.run(rig.positioner.identify());
+    await rig.run(rig.positioner.home());
+    await rig.run(rig.positioner.moveTo({ azimuth: 80 }));
+    expect(rig.shaftDeg()).toBeCloseTo(80, 6);
+  });
+
+  it('stays lost after a cut in mid-move that was ended by a stop over a new link', async () => {
+    const rig = await readyReportRig();
+    const moving = failure(rig, rig.positioner.moveTo({ azimuth: 180 }));
+    await rig.run(rig.clock.sleep(2_000));
+    await rig.run(rig.controller.dropVisitors());
+    expect((await moving).code).toBe('LINK_CLOSED');
+    const report = await rig.run(rig.positioner.stop());
+    expect(rig.shaftDeg()).toBeLessThan(140);
+    expect(Math.abs(rig.shaftDeg() - report.position['azimuth']!)).toBeLessThan(0.5);
+    await rig.run(rig.positioner.identify());
+    expect((await failure(rig, rig.positioner.home())).code).toBe('POSITIONER_REFERENCE_LOST');
   });
 });
 
