@@ -148,7 +148,8 @@ export function legMotion(
   for (const axis of axes) {
     const distanceDeg = Math.abs((toDeg[axis.name] ?? Number.NaN) - (fromDeg[axis.name] ?? Number.NaN));
     const limit = limits[axis.name] ?? axis;
-    if (!(distanceDeg > 0)) continue;
+    // A difference that rounding alone makes has no duration that could be computed.
+    if (!(distanceDeg > sameDeg)) continue;
     pathUnits = Math.hypot(pathUnits, unitsOf(axis, distanceDeg));
     perSecond = Math.min(perSecond, limit.rateDegPerS / distanceDeg);
     perSecond2 = Math.min(perSecond2, limit.accelerationDegPerS2 / distanceDeg);
