@@ -141,6 +141,13 @@ describe('motion time and feed', () => {
     expect(feedUnitsPerMin).toBeCloseTo((50 / (40 / 3)) * 60, 9);
     expect(seconds).toBeCloseTo(40 / 3 + 3 / 60, 9);
   });
+
+  it.each([0, 5e-324, 1e-300, 1e-12])('gives %f° of way no duration, and a feed all the same', (wayDeg) => {
+    const { feedUnitsPerMin, seconds } = legMotion([azimuth], {}, { azimuth: 0 }, { azimuth: wayDeg });
+    expect(seconds).toBe(0);
+    expect(feedUnitsPerMin).toBeGreaterThan(0);
+    expect(Number.isFinite(feedUnitsPerMin)).toBe(true);
+  });
 });
 
 describe('motionLine', () => {
