@@ -384,9 +384,9 @@ describe.each(ways)('a positioner, $family, over $name', (wire) => {
     expect(rig.shaftDeg()[0]).toBeCloseTo(90, 2);
   });
 
-  it.runIf(wire.family === 'realtime-status')(
-    'leaves a hold to whoever pressed it, and goes on after a stop',
-    async () => {
+  // The other family has no hold: there is nothing to test, and so nothing to skip.
+  if (wire.family === 'realtime-status')
+    it('leaves a hold to whoever pressed it, and goes on after a stop', async () => {
       const rig = await readyOn(wire, withPlay, [azimuth], unhurried);
       const { at, positioner } = rig;
       const [moving] = await inMidMove(rig, { azimuth: 180 });
@@ -399,8 +399,7 @@ describe.each(ways)('a positioner, $family, over $name', (wire) => {
       await at.run(positioner.stop());
       await travelTo(rig, { azimuth: -20 });
       expect(Math.abs(rig.shaftDeg()[0]! + 20)).toBeLessThanOrEqual(2 * halfStepDeg + 1e-9);
-    },
-  );
+    });
 
   it('moves nothing and is refused when somebody else moves the controller', async () => {
     const rig = await rigOn(wire, withPlay, [azimuth]);
