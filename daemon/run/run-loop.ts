@@ -19,6 +19,7 @@ import type { Device, RunEvent } from './events.ts';
 import { from, measurePosition, type PositionTools, StepFailure } from './measure-position.ts';
 import { medianDifferenceDb } from './repeat-check.ts';
 import { reactionTo, segmentsPerRun, triesPerPosition, waitBeforeRetryMs } from './retry-table.ts';
+import { RunJournal } from './run-journal.ts';
 import { type Bench, safeStop } from './safe-stop.ts';
 import { type Connected, connect, openSegment, type SegmentTools, waitForDevice } from './segments.ts';
 import { timeLeft } from './time-left.ts';
@@ -70,25 +71,16 @@ export class RunLoop {
   readonly #order: RunOrder;
   readonly #events = new Subject<RunEvent>();
   readonly #tools: SegmentTools;
-  #run: RunRef | undefined;
-  #connected: Connected | undefined;
-  #segment = 0;
-  #sequence = 0;
+  #opened: { journal: RunJournal; connected: Connected } | undefined;
   /** The segment that must be opened before the next sample; at first the run's own. */
   #due: DueSegment | undefined = { reason: 'start', away: new Set() };
-  /** The one sample that may still be on its way to the disk. */
-  #pending: Promise<void> = Promise.resolve();
 
   constructor(bench: Bench, archive: Archive, clock: Clock, order: RunOrder) {
     this.#bench = bench;
     this.#archive = archive;
     this.#clock = clock;
     this.#order = order;
-    if (order.resume) {
-      this.#segment = order.resume.segments;
-      this.#sequence = order.resume.samples;
-      this.#due = { reason: 'resumed', away: new Set() };
-    }
+    if (order.resume) this.#due = { reason: 'resumed', away: new Set() };
     this.#tools = { bench, archive, clock, tell: (event) => this.#tell(event) };
   }
 
@@ -103,28 +95,30 @@ export class RunLoop {
    * without saying so in `unconfirmed`.
    */
   async execute(signal: AbortSignal): Promise<RunOutcome> {
+    const { resume, sweep } = this.#order;
+    let connected: Connected;
     try {
-      const isReturn = this.#order.resume !== undefined;
-      this.#connected = await connect(this.#bench, this.#clock, this.#order.sweep, isReturn, signal);
+      connected = await connect(this.#bench, this.#clock, sweep, resume !== undefined, signal);
       await this.#checkUntouched(signal);
     } catch (error) {
       await safeStop(this.#bench);
       throw causeOf(error, signal);
     }
-    const run = this.#order.resume?.run ?? (await this.#createRun());
-    this.#run = run;
+    const run = resume?.run ?? (await this.#createRun());
+    const journal = new RunJournal(run, this.#archive, this.#clock, resume);
+    this.#opened = { journal, connected };
     let error: unknown;
     try {
-      await this.#measure(run, this.#connected, signal);
+      await this.#measure(journal, connected, signal);
     } catch (thrown) {
       error = causeOf(thrown, signal);
     }
     const unconfirmed = await safeStop(this.#bench);
     const rest = await restNow(this.#bench.positioner);
-    await this.#note(restEvent, rest.known ? 'the axes are at rest' : 'where the axes stand is not known', {
-      ...rest,
-    }).catch(() => {});
-    return this.#end(run, error, unconfirmed);
+    const where = rest.known ? 'the axes are at rest' : 'where the axes stand is not known';
+    // A disk that is full has ended the run already, and is told of at its end.
+    await journal.note(restEvent, where, { ...rest }).catch(() => {});
+    return this.#end(journal, error, unconfirmed);
   }
 
   #createRun(): Promise<RunRef> {
@@ -141,19 +135,20 @@ export class RunLoop {
     checkUntouched(positioner, lastRest, now);
   }
 
-  async #measure(run: RunRef, connected: Connected, signal: AbortSignal): Promise<void> {
+  async #measure(journal: RunJournal, connected: Connected, signal: AbortSignal): Promise<void> {
     const { steps, motionMs } = this.#order;
     const predictedMs = motionMs.map((ms) => ms + connected.sweep.acquisitionMs);
     const left = timeLeft(predictedMs);
     const expectedMs = predictedMs.reduce((sum, ms) => sum + ms, 0);
-    this.#tell({ kind: 'started', run, steps: steps.length, expectedMs });
+    this.#tell({ kind: 'started', run: journal.run, steps: steps.length, expectedMs });
     const startMs = this.#clock.monotonicMs();
     for (const [index, step] of steps.entries()) {
       const sample = await this.#takeStep(step, signal);
-      const elapsedMs = this.#clock.monotonicMs() - startMs;
-      this.#keep(sample, index + 1, left.finished(index, elapsedMs));
+      const leftMs = left.finished(index, this.#clock.monotonicMs() - startMs);
+      const done = index + 1;
+      journal.keep(sample, () => this.#tell({ kind: 'sample', sample, done, steps: steps.length, leftMs }));
     }
-    await this.#durable();
+    await journal.durable();
   }
 
   /** One position, with as many tries as the retry table allows. */
@@ -178,17 +173,18 @@ export class RunLoop {
 
   #sample(step: PlannedStep, attempt: number, revisit: boolean, signal: AbortSignal): Promise<SampleRecord> {
     const { autPort } = this.#order;
+    const { journal } = this.#open();
     const tools: PositionTools = {
       ...this.#bench,
       clock: this.#clock,
       transmission: 'S21',
       match: autPort === 1 ? 'S11' : 'S22',
-      beforeDurable: () => this.#durable(),
+      beforeDurable: () => journal.durable(),
     };
     const context = {
-      segment: this.#segment,
-      sequence: this.#sequence + 1,
-      setup: this.#segment,
+      segment: journal.segment,
+      sequence: journal.sequence + 1,
+      setup: journal.segment,
       attempt,
       revisit,
     };
@@ -217,7 +213,7 @@ export class RunLoop {
     const waitMs = waitBeforeRetryMs(tries);
     const { device } = failure;
     const { code, message: text, facts } = error;
-    await this.#note('retry', text, { device, code, attempt: tries, ...facts });
+    await this.#open().journal.note('retry', text, { device, code, attempt: tries, ...facts });
     this.#tell({ kind: 'retry', device, code, text, facts, attempt: tries, waitMs });
     await this.#clock.sleep(waitMs, signal);
     if (reaction === 'again') return device === 'positioner';
@@ -231,10 +227,10 @@ export class RunLoop {
    * interruption a tie. It stays due until all of that has succeeded. True when axes may have moved.
    */
   async #openDueSegment(due: DueSegment, step: PlannedStep, signal: AbortSignal): Promise<boolean> {
-    const { run, connected } = this.#open();
-    const mayHaveMoved = this.#segment > 0;
-    if (this.#segment - (this.#order.resume?.segments ?? 0) >= segmentsPerRun) {
-      throw new DaemonError('RUN_GAVE_UP', `${this.#segment} interruptions in one run`, {
+    const { journal, connected } = this.#open();
+    const mayHaveMoved = journal.segment > 0;
+    if (journal.segment - (this.#order.resume?.segments ?? 0) >= segmentsPerRun) {
+      throw new DaemonError('RUN_GAVE_UP', `${journal.segment} interruptions in one run`, {
         reason: due.reason,
       });
     }
@@ -242,27 +238,27 @@ export class RunLoop {
       await from(device, waitForDevice(this.#tools, device, signal));
       due.away.delete(device);
     }
-    await this.#durable();
-    this.#segment += 1;
-    await this.#note('segment', due.reason, { segment: this.#segment });
-    await openSegment(this.#tools, run.number, this.#segment, due.reason, connected, signal);
+    await journal.durable();
+    journal.segment += 1;
+    await journal.note('segment', due.reason, { segment: journal.segment });
+    await openSegment(this.#tools, journal.run.number, journal.segment, due.reason, connected, signal);
     if (due.reason !== 'start') {
       const tie: PlannedStep = { ...step, purpose: 'tie', angleDeg: 0, target: this.#order.boresight };
-      await this.#store(await this.#sample(tie, 1, true, signal));
+      journal.keep(await this.#sample(tie, 1, true, signal));
     }
-    if (due.reason === 'resumed') await this.#repeatLast(signal);
+    if (due.reason === 'resumed') await this.#repeatLast(journal, signal);
     this.#due = undefined;
     return mayHaveMoved;
   }
 
   /** The last positions before the interruption once more: what they differ by is told and kept. */
-  async #repeatLast(signal: AbortSignal): Promise<void> {
+  async #repeatLast(journal: RunJournal, signal: AbortSignal): Promise<void> {
     for (const { step, trace } of this.#order.resume?.repeats ?? []) {
       const sample = await this.#sample({ ...step, purpose: 'repeat' }, 1, true, signal);
-      await this.#store(sample);
+      journal.keep(sample);
       const differenceDb = medianDifferenceDb(trace, sample.traces.get('S21') ?? trace);
       const text = `${step.cut} ${step.angleDeg}° repeated: ${differenceDb.toFixed(3)} dB from before`;
-      await this.#note('repeat', text, { cut: step.cut, angleDeg: step.angleDeg, differenceDb });
+      await journal.note('repeat', text, { cut: step.cut, angleDeg: step.angleDeg, differenceDb });
     }
   }
 
@@ -271,59 +267,25 @@ export class RunLoop {
     return this.#bench.positioner.axes.every((axis) => axis.homing === 'switch');
   }
 
-  #store(sample: SampleRecord): Promise<void> {
-    const { run } = this.#open();
-    this.#sequence = sample.sequence;
-    const stored = this.#archive.addSample(run.number, sample);
-    this.#pending = stored;
-    // Awaited before the next sweep; until then a failure must not count as unhandled.
-    stored.catch(() => {});
-    return stored;
-  }
-
-  #keep(sample: SampleRecord, done: number, leftMs: number): void {
-    const steps = this.#order.steps.length;
-    this.#pending = this.#store(sample).then(() =>
-      this.#tell({ kind: 'sample', sample, done, steps, leftMs }),
-    );
-    this.#pending.catch(() => {});
-  }
-
-  #durable(): Promise<void> {
-    return this.#clock.whileReal(this.#pending);
-  }
-
-  async #end(run: RunRef, error: unknown, unconfirmed: unknown[]): Promise<RunOutcome> {
+  async #end(journal: RunJournal, error: unknown, unconfirmed: unknown[]): Promise<RunOutcome> {
     // What was taken is safe before the run is called ended.
-    await this.#durable().catch(() => {});
+    await journal.durable().catch(() => {});
     for (const trouble of unconfirmed) {
-      await this.#note('trouble', `not confirmed at the end: ${messageOf(trouble)}`, {});
-      this.#tell({ kind: 'trouble', text: `not confirmed at the end: ${messageOf(trouble)}` });
+      const text = `not confirmed at the end: ${messageOf(trouble)}`;
+      await journal.note('trouble', text);
+      this.#tell({ kind: 'trouble', text });
     }
+    const { run } = journal;
     const state = error === undefined ? 'complete' : stateAfter(error);
     const reason = error === undefined ? undefined : messageOf(error);
-    await this.#clock.whileReal(this.#archive.endRun(run.number, state, this.#clock.wallMs(), reason));
+    await journal.end(state, reason);
     this.#tell({ kind: 'ended', run, state, ...(reason === undefined ? {} : { reason }) });
     return { run, state, unconfirmed, ...(error === undefined ? {} : { error }) };
   }
 
-  #note(kind: string, text: string, facts: Readonly<Record<string, unknown>>): Promise<void> {
-    const { run } = this.#open();
-    return this.#clock.whileReal(
-      this.#archive.addEvent(run.number, {
-        segment: this.#segment,
-        wallMs: this.#clock.wallMs(),
-        monotonicMs: this.#clock.monotonicMs(),
-        kind,
-        text,
-        facts,
-      }),
-    );
-  }
-
-  #open(): { run: RunRef; connected: Connected } {
-    if (!this.#run || !this.#connected) throw new DaemonError('DEFECT', 'the run has not been created yet');
-    return { run: this.#run, connected: this.#connected };
+  #open(): { journal: RunJournal; connected: Connected } {
+    if (!this.#opened) throw new DaemonError('DEFECT', 'the run has not been created yet');
+    return this.#opened;
   }
 
   #tell(event: RunEvent): void {
