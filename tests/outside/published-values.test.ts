@@ -520,7 +520,7 @@ describe('published values', () => {
   it('all name their source and say where it stands', () => {
     for (const { id, source, status } of entries) {
       expect(source, id).toMatch(/\w{4}/);
-      expect(['computed', 'read in the source', 'from memory'], id).toContain(status);
+      expect(['computed', 'seen in a copy of the source', 'from memory'], id).toContain(status);
     }
   });
 });
