@@ -3,7 +3,7 @@
 // order, what may be turning, and who is told when something goes wrong.
 import type { Observable } from 'rxjs';
 import type { Clock } from '../clock.ts';
-import { DriverError, isDriverError } from '../errors.ts';
+import { DriverError } from '../errors.ts';
 import type { Link } from '../link/link.ts';
 import { connect } from './gcode-connect.ts';
 import { homeAxes } from './gcode-home.ts';
@@ -13,7 +13,8 @@ import { awaitRest, type GcodeParts, readPlaced } from './gcode-parts.ts';
 import { GcodeReference, type Placed } from './gcode-reference.ts';
 import { isMoving } from './gcode-reports.ts';
 import { GcodeSender, type OnTraffic } from './gcode-sender.ts';
-import { stopAxes, type Underway } from './gcode-stop.ts';
+import { stopAxes } from './gcode-stop.ts';
+import { OperationTurns, type Underway } from './operation-turns.ts';
 import type {
   Arrival,
   AxisName,
@@ -24,7 +25,7 @@ import type {
   PositionReport,
   StopReport,
 } from './positioner.ts';
-import { checkTarget, planLegs, type Stand } from './travel.ts';
+import { checkTarget, planLegs, settleMsOf, standsOf } from './travel.ts';
 
 export interface GcodePositionerOptions {
   axes: readonly AxisSetup[];
@@ -41,11 +42,7 @@ export class GcodePositioner implements Positioner {
   readonly axes: readonly AxisSetup[];
   readonly #parts: GcodeParts;
   readonly #believeZero: boolean;
-  #queue: Promise<unknown> = Promise.resolve();
-  #operation: { ends: AbortController; ridesOutRestarts: boolean } | undefined;
-  #stopping: Promise<StopReport> | undefined;
-  #stops = 0;
-  #underway: Underway = 'nothing';
+  readonly #turns: OperationTurns;
   /** Coordinates at which axes came to rest from their approach side, by our own last move. */
   #arrivedDeg: Record<AxisName, number> = {};
 
@@ -68,9 +65,15 @@ export class GcodePositioner implements Positioner {
       // A reset of our own takes the mark along and is no reason to suspect another.
       if (event.kind === 'restart' && event.asked) forgetMark(this.#parts);
     });
-    reference.faults$.subscribe((error) => {
-      if (!this.#operation?.ridesOutRestarts) this.#fail(error);
+    this.#turns = new OperationTurns({
+      stop: (underway) => this.#stopAxes(underway),
+      seenMoving: () => reference.last !== undefined && isMoving(reference.last.report),
+      expectMotion: (expected) => {
+        reference.motionExpected = expected;
+      },
+      atRestAfter: ['POSITIONER_ALARM', 'POSITIONER_RESTARTED'],
     });
+    reference.faults$.subscribe((error) => this.#turns.fault(error));
   }
 
   get referenceValid(): boolean {
@@ -91,21 +94,21 @@ export class GcodePositioner implements Positioner {
    * NOT_ANSWERING the link stays open: stop() brings the machine to rest, and identify() can be asked again.
    */
   identify(signal?: AbortSignal): Promise<ControllerIdentity> {
-    return this.#exclusive(signal, (both) => connect(this.#parts, both), { ridesOutRestarts: true });
+    return this.#turns.exclusive(signal, (both) => connect(this.#parts, both), { ridesOutRestarts: true });
   }
 
   home(signal?: AbortSignal): Promise<void> {
-    return this.#exclusive(signal, async (both) => {
+    return this.#turns.exclusive(signal, async (both) => {
       this.#arrivedDeg = {};
       const onMotion = (): void => {
-        this.#moves('homing');
+        this.#turns.moves('homing');
         this.#parts.reference.lose(
           new DriverError('POSITIONER_REFERENCE_LOST', 'homing was begun and not ended', {}),
           false,
         );
       };
       await homeAxes(this.#parts, { believeZeroAfterRestart: this.#believeZero, onMotion }, both);
-      this.#atRest();
+      this.#turns.atRest();
     });
   }
 
@@ -114,16 +117,21 @@ export class GcodePositioner implements Positioner {
     options: { throughApproach?: boolean; signal?: AbortSignal } = {},
   ): Promise<Arrival> {
     checkTarget(this.axes, target);
-    return this.#exclusive(options.signal, async (signal) => {
+    return this.#turns.exclusive(options.signal, async (signal) => {
       this.#parts.reference.check();
       const placed = await awaitRest(this.#parts, signal);
       await proveMemory(this.#parts, placed, signal);
-      const legs = planLegs(this.axes, this.#stands(placed.position), target, options.throughApproach);
+      const legs = planLegs(
+        this.axes,
+        standsOf(this.axes, this.#arrivedDeg, placed.position),
+        target,
+        options.throughApproach,
+      );
       const arrivedDeg = this.#arrivedDeg;
       this.#arrivedDeg = {};
       const { position } = await this.#drive(placed.position, legs, target, signal);
-      this.#atRest();
-      await this.#parts.clock.sleep(this.#settleMs(target), signal);
+      this.#turns.atRest();
+      await this.#parts.clock.sleep(settleMsOf(this.axes, target), signal);
       this.#arrivedDeg = { ...arrivedDeg, ...target };
       return { position, settledMonotonicMs: this.#parts.clock.monotonicMs() };
     });
@@ -131,10 +139,7 @@ export class GcodePositioner implements Positioner {
 
   /** Throws POSITIONER_STOP_UNCONFIRMED. A second call while one is under way is told the same outcome. */
   stop(): Promise<StopReport> {
-    this.#stopping ??= this.#stop().finally(() => {
-      this.#stopping = undefined;
-    });
-    return this.#stopping;
+    return this.#turns.stop();
   }
 
   /** Throws POSITIONER_RESTARTED after a restart until the axes were homed; before any homing it reads freely. */
@@ -147,7 +152,7 @@ export class GcodePositioner implements Positioner {
 
   /** Closes the link; whatever moves goes on to the end of its leg. Call stop() first. */
   async close(): Promise<void> {
-    this.#fail(new DriverError('LINK_CLOSED', `${this.#parts.link.name} was closed by us`, {}));
+    this.#turns.fail(new DriverError('LINK_CLOSED', `${this.#parts.link.name} was closed by us`, {}));
     await this.#parts.link.close();
   }
 
@@ -160,7 +165,7 @@ export class GcodePositioner implements Positioner {
     try {
       let atDeg = fromDeg;
       for (const leg of legs) {
-        await driveLeg(this.#parts, atDeg, leg, () => this.#moves('move'), signal);
+        await driveLeg(this.#parts, atDeg, leg, () => this.#turns.moves('move'), signal);
         atDeg = { ...atDeg, ...leg };
       }
       const placed = await readBack(this.#parts, target, signal);
@@ -173,90 +178,9 @@ export class GcodePositioner implements Positioner {
     }
   }
 
-  async #stop(): Promise<StopReport> {
-    this.#stops += 1;
-    const { reference } = this.#parts;
-    const looksMoving = reference.last !== undefined && isMoving(reference.last.report);
-    const underway = this.#underway === 'nothing' && looksMoving ? 'move' : this.#underway;
+  #stopAxes(underway: Underway): Promise<StopReport> {
     const stopped = stopAxes(this.#parts, underway);
     this.#arrivedDeg = {};
-    this.#fail(new DriverError('POSITIONER_STOPPED', 'stopped on request', { underway }));
-    const report = await stopped;
-    this.#atRest();
-    return report;
-  }
-
-  /** Runs one operation after those before it; a fault or a stop ends it, and a move it leaves behind is stopped. */
-  #exclusive<T>(
-    signal: AbortSignal | undefined,
-    act: (signal: AbortSignal) => Promise<T>,
-    { ridesOutRestarts = false } = {},
-  ): Promise<T> {
-    const stops = this.#stopping ? Number.NaN : this.#stops;
-    const turn = this.#queue.then(async () => {
-      if (stops !== this.#stops)
-        throw new DriverError('POSITIONER_STOPPED', 'a stop came before this could begin');
-      const ends = new AbortController();
-      this.#operation = { ends, ridesOutRestarts };
-      try {
-        return await act(signal ? AbortSignal.any([signal, ends.signal]) : ends.signal);
-      } catch (error) {
-        throw await this.#clearUp(error);
-      } finally {
-        this.#operation = undefined;
-      }
-    });
-    // The caller has the failure; the queue only keeps the order.
-    this.#queue = turn.catch(() => {});
-    return turn;
-  }
-
-  /** What to throw in the end: an operation that failed in motion is followed by a stop, unless that is pointless. */
-  async #clearUp(error: unknown): Promise<unknown> {
-    if (this.#underway === 'nothing' || this.#stopping) return error;
-    // Held: the lock belongs to whoever stands at the machine. Alarm, restart: nothing moves, nothing is queued.
-    if (isDriverError(error, 'POSITIONER_HELD', 'LINK_CLOSED')) return error;
-    if (isDriverError(error, 'POSITIONER_ALARM', 'POSITIONER_RESTARTED')) {
-      this.#atRest();
-      return error;
-    }
-    try {
-      await this.stop();
-      return error;
-    } catch (unconfirmed) {
-      if (!isDriverError(unconfirmed)) return unconfirmed;
-      return new DriverError(unconfirmed.code, unconfirmed.message, unconfirmed.facts, error);
-    }
-  }
-
-  #fail(error: DriverError): void {
-    this.#operation?.ends.abort(error);
-  }
-
-  #moves(underway: Underway): void {
-    this.#underway = underway;
-    this.#parts.reference.motionExpected = true;
-  }
-
-  #atRest(): void {
-    this.#underway = 'nothing';
-    this.#parts.reference.motionExpected = false;
-  }
-
-  /** Where each axis stands: where we sent it, as long as it is still there; otherwise where it says to be. */
-  #stands(position: Position): Record<AxisName, Stand> {
-    return Object.fromEntries(
-      this.axes.map((axis) => {
-        const reportedDeg = position[axis.name] ?? Number.NaN;
-        const sentDeg = this.#arrivedDeg[axis.name];
-        const takenUp = sentDeg !== undefined && Math.abs(sentDeg - reportedDeg) <= axis.toleranceDeg;
-        return [axis.name, { deg: takenUp ? sentDeg : reportedDeg, takenUp }];
-      }),
-    );
-  }
-
-  #settleMs(target: Position): number {
-    const named = this.axes.filter((axis) => target[axis.name] !== undefined);
-    return Math.max(0, ...named.map((axis) => axis.settleMs));
+    return stopped;
   }
 }

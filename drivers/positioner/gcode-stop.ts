@@ -3,12 +3,14 @@
 //   moving:   !  ──►  Hold:1 … Hold:0  ──►  soft reset  ──►  banner  ──►  two reports alike     position kept
 //   no hold in time, or nothing answered:    soft reset  ──►  …                               position doubtful
 //   at rest:  ?  ──►  two reports alike; no hold, which would lock an idle controller
+
 import { DriverError, isDriverError } from '../errors.ts';
 import { urgentBytes } from './gcode-events.ts';
 import { fallToZero, noteMemory, setModes } from './gcode-memory.ts';
 import { brakingMs, type GcodeParts, pollMs, readPlaced, samePlace } from './gcode-parts.ts';
 import type { Placed } from './gcode-reference.ts';
 import { isHeld, isMoving } from './gcode-reports.ts';
+import type { Underway } from './operation-turns.ts';
 import type { StopReport } from './positioner.ts';
 
 const holdGraceMs = 1_500;
@@ -19,8 +21,6 @@ const repeatHoldMs = 300;
 const confirmTries = 10;
 
 /** What may be turning when the stop is called. */
-export type Underway = 'nothing' | 'move' | 'homing';
-
 /** See Positioner.stop. Sends its first bytes before it first yields. */
 export async function stopAxes(parts: GcodeParts, underway: Underway): Promise<StopReport> {
   const calledMs = parts.clock.monotonicMs();

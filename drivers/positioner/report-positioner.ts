@@ -3,8 +3,9 @@
 // turning, and who is told when something goes wrong.
 import type { Observable } from 'rxjs';
 import type { Clock } from '../clock.ts';
-import { DriverError, isDriverError } from '../errors.ts';
+import { DriverError } from '../errors.ts';
 import type { Link } from '../link/link.ts';
+import { OperationTurns, type Underway } from './operation-turns.ts';
 import type {
   Arrival,
   AxisName,
@@ -21,8 +22,8 @@ import { driveReportLeg } from './report-move.ts';
 import { askPosition, longestMotionMs, type ReportParts, restingPlace } from './report-parts.ts';
 import { ReportReference } from './report-reference.ts';
 import { type OnReportTraffic, ReportSender } from './report-sender.ts';
-import { type ReportUnderway, stopReportAxes } from './report-stop.ts';
-import { checkTarget, planLegs, type Stand } from './travel.ts';
+import { stopReportAxes } from './report-stop.ts';
+import { checkTarget, planLegs, settleMsOf, standsOf } from './travel.ts';
 
 export interface ReportPositionerOptions {
   axes: readonly AxisSetup[];
@@ -36,11 +37,7 @@ export class ReportPositioner implements Positioner {
   readonly axes: readonly AxisSetup[];
   readonly #parts: ReportParts;
   readonly #believeZero: boolean;
-  #queue: Promise<unknown> = Promise.resolve();
-  #operation: { ends: AbortController; ridesOutRestarts: boolean } | undefined;
-  #stopping: Promise<StopReport> | undefined;
-  #stops = 0;
-  #underway: ReportUnderway = 'nothing';
+  readonly #turns: OperationTurns;
   /** Coordinates at which axes came to rest from their approach side, by our own last move. */
   #arrivedDeg: Record<AxisName, number> = {};
 
@@ -59,9 +56,16 @@ export class ReportPositioner implements Positioner {
       stopsAtOnce: false,
     };
     sender.events$.subscribe((event) => reference.take(event));
-    reference.faults$.subscribe((error) => {
-      if (!this.#operation?.ridesOutRestarts) this.#fail(error);
+    this.#turns = new OperationTurns({
+      stop: (underway) => this.#stopAxes(underway),
+      seenMoving: () => this.#foreignMotion,
+      expectMotion: (expected) => {
+        reference.motionExpected = expected;
+      },
+      // It came to rest elsewhere, behind a barrier; or halted, or restarted.
+      atRestAfter: ['POSITIONER_ALARM', 'POSITIONER_RESTARTED', 'POSITIONER_WRONG_PLACE'],
     });
+    reference.faults$.subscribe((error) => this.#turns.fault(error));
   }
 
   get referenceValid(): boolean {
@@ -82,7 +86,7 @@ export class ReportPositioner implements Positioner {
     const onBusy = (): void => {
       this.#foreignMotion = true;
     };
-    return this.#exclusive(signal, (both) => connectReports(this.#parts, onBusy, both), {
+    return this.#turns.exclusive(signal, (both) => connectReports(this.#parts, onBusy, both), {
       ridesOutRestarts: true,
     });
   }
@@ -91,17 +95,17 @@ export class ReportPositioner implements Positioner {
   #foreignMotion = false;
 
   home(signal?: AbortSignal): Promise<void> {
-    return this.#exclusive(signal, async (both) => {
+    return this.#turns.exclusive(signal, async (both) => {
       this.#arrivedDeg = {};
       const onMotion = (): void => {
-        this.#moves('homing');
+        this.#turns.moves('homing');
         this.#parts.reference.lose(
           new DriverError('POSITIONER_REFERENCE_LOST', 'homing was begun and not ended', {}),
           false,
         );
       };
       await homeReportAxes(this.#parts, { believeZeroAfterRestart: this.#believeZero, onMotion }, both);
-      this.#atRest();
+      this.#turns.atRest();
     });
   }
 
@@ -110,17 +114,22 @@ export class ReportPositioner implements Positioner {
     options: { throughApproach?: boolean; signal?: AbortSignal } = {},
   ): Promise<Arrival> {
     checkTarget(this.axes, target);
-    return this.#exclusive(options.signal, async (signal) => {
+    return this.#turns.exclusive(options.signal, async (signal) => {
       this.#parts.reference.check();
       let position = await restingPlace(this.#parts, longestMotionMs(this.#parts) * 1.5 + 5_000, signal);
-      const legs = planLegs(this.axes, this.#stands(position), target, options.throughApproach);
+      const legs = planLegs(
+        this.axes,
+        standsOf(this.axes, this.#arrivedDeg, position),
+        target,
+        options.throughApproach,
+      );
       const arrivedDeg = this.#arrivedDeg;
       this.#arrivedDeg = {};
       for (const leg of legs) {
-        position = await driveReportLeg(this.#parts, position, leg, () => this.#moves('move'), signal);
+        position = await driveReportLeg(this.#parts, position, leg, () => this.#turns.moves('move'), signal);
       }
-      this.#atRest();
-      await this.#parts.clock.sleep(this.#settleMs(target), signal);
+      this.#turns.atRest();
+      await this.#parts.clock.sleep(settleMsOf(this.axes, target), signal);
       this.#arrivedDeg = { ...arrivedDeg, ...target };
       return { position, settledMonotonicMs: this.#parts.clock.monotonicMs() };
     });
@@ -131,10 +140,7 @@ export class ReportPositioner implements Positioner {
    * Throws POSITIONER_STOP_UNCONFIRMED. A second call while one is under way is told the same outcome.
    */
   stop(): Promise<StopReport> {
-    this.#stopping ??= this.#stop().finally(() => {
-      this.#stopping = undefined;
-    });
-    return this.#stopping;
+    return this.#turns.stop();
   }
 
   /** At rest; in motion the answer is the target. Throws POSITIONER_RESTARTED after a restart until homed. */
@@ -142,99 +148,21 @@ export class ReportPositioner implements Positioner {
     if (this.#parts.reference.restarted) this.#parts.reference.check();
     const position = await askPosition(this.#parts, signal);
     if (this.#parts.reference.restarted) this.#parts.reference.check();
-    if (this.#underway === 'nothing') this.#parts.reference.publish(position, false);
+    if (this.#turns.underway === 'nothing') this.#parts.reference.publish(position, false);
     return position;
   }
 
   /** Closes the link; whatever moves goes on to the end of its leg. Call stop() first. */
   async close(): Promise<void> {
-    this.#fail(new DriverError('LINK_CLOSED', `${this.#parts.link.name} was closed by us`, {}));
+    this.#turns.fail(new DriverError('LINK_CLOSED', `${this.#parts.link.name} was closed by us`, {}));
     await this.#parts.link.close();
   }
 
-  async #stop(): Promise<StopReport> {
-    this.#stops += 1;
-    const underway = this.#underway === 'nothing' && this.#foreignMotion ? 'move' : this.#underway;
+  async #stopAxes(underway: Underway): Promise<StopReport> {
     const stopped = stopReportAxes(this.#parts, underway);
     this.#arrivedDeg = {};
-    this.#fail(new DriverError('POSITIONER_STOPPED', 'stopped on request', { underway }));
     const report = await stopped;
     this.#foreignMotion = false;
-    this.#atRest();
     return report;
-  }
-
-  /** Runs one operation after those before it; a fault or a stop ends it, and a move it leaves behind is stopped. */
-  #exclusive<T>(
-    signal: AbortSignal | undefined,
-    act: (signal: AbortSignal) => Promise<T>,
-    { ridesOutRestarts = false } = {},
-  ): Promise<T> {
-    const stops = this.#stopping ? Number.NaN : this.#stops;
-    const turn = this.#queue.then(async () => {
-      if (stops !== this.#stops)
-        throw new DriverError('POSITIONER_STOPPED', 'a stop came before this could begin');
-      const ends = new AbortController();
-      this.#operation = { ends, ridesOutRestarts };
-      try {
-        return await act(signal ? AbortSignal.any([signal, ends.signal]) : ends.signal);
-      } catch (error) {
-        throw await this.#clearUp(error);
-      } finally {
-        this.#operation = undefined;
-      }
-    });
-    // The caller has the failure; the queue only keeps the order.
-    this.#queue = turn.catch(() => {});
-    return turn;
-  }
-
-  /** What to throw in the end: an operation that failed in motion is followed by a stop, unless that is pointless. */
-  async #clearUp(error: unknown): Promise<unknown> {
-    if (this.#underway === 'nothing' || this.#stopping) return error;
-    if (isDriverError(error, 'POSITIONER_HELD', 'LINK_CLOSED')) return error;
-    // It came to rest elsewhere, behind a barrier; or halted, or restarted: nothing moves, nothing is queued.
-    if (isDriverError(error, 'POSITIONER_ALARM', 'POSITIONER_RESTARTED', 'POSITIONER_WRONG_PLACE')) {
-      this.#atRest();
-      return error;
-    }
-    try {
-      await this.stop();
-      return error;
-    } catch (unconfirmed) {
-      if (!isDriverError(unconfirmed)) return unconfirmed;
-      return new DriverError(unconfirmed.code, unconfirmed.message, unconfirmed.facts, error);
-    }
-  }
-
-  #fail(error: DriverError): void {
-    this.#operation?.ends.abort(error);
-  }
-
-  #moves(underway: ReportUnderway): void {
-    this.#underway = underway;
-    this.#parts.reference.motionExpected = true;
-  }
-
-  #atRest(): void {
-    this.#underway = 'nothing';
-    this.#parts.reference.motionExpected = false;
-  }
-
-  /** Where each axis stands: where we sent it, as long as it is still there; otherwise where it says to be. */
-  #stands(position: Position): Record<AxisName, Stand> {
-    return Object.fromEntries(
-      this.axes.map((axis) => {
-        const reportedDeg = position[axis.name] ?? Number.NaN;
-        const sentDeg = this.#arrivedDeg[axis.name];
-        const takenUp = sentDeg !== undefined && Math.abs(sentDeg - reportedDeg) <= axis.toleranceDeg;
-        return [axis.name, { deg: takenUp ? sentDeg : reportedDeg, takenUp }];
-      }),
-    );
-  }
-
-  #settleMs(target: Position): number {
-    const named = this.axes.filter((axis) => target[axis.name] !== undefined);
-    return Math.max(0, ...named.map((axis) => axis.settleMs));
   }
 }

@@ -8,11 +8,11 @@
 //
 // Without an emergency parser these are read when their line is taken: at once while fewer lines wait than the
 // queue holds, and we never have more than one. There is no gentle stop of a move under way in this family.
+
 import { DriverError, isDriverError } from '../errors.ts';
+import type { Underway } from './operation-turns.ts';
 import type { StopReport } from './positioner.ts';
 import { longestMotionMs, type ReportParts, restingPlace } from './report-parts.ts';
-
-export type ReportUnderway = 'nothing' | 'move' | 'homing';
 
 const quickStop = 'M410';
 const emergencyStop = 'M112';
@@ -23,7 +23,7 @@ const restWithinMs = 1_500;
 const haltMs = 2_000;
 
 /** See Positioner.stop. Sends its first bytes before it first yields. */
-export async function stopReportAxes(parts: ReportParts, underway: ReportUnderway): Promise<StopReport> {
+export async function stopReportAxes(parts: ReportParts, underway: Underway): Promise<StopReport> {
   const calledMs = parts.clock.monotonicMs();
   try {
     if (parts.link.isOpen) {
@@ -51,7 +51,7 @@ export async function stopReportAxes(parts: ReportParts, underway: ReportUnderwa
   }
 }
 
-function sendFirst(parts: ReportParts, underway: ReportUnderway): void {
+function sendFirst(parts: ReportParts, underway: Underway): void {
   if (underway === 'nothing' || parts.sender.halted !== undefined) return;
   parts.reference.lose(
     new DriverError('POSITIONER_REFERENCE_LOST', `${parts.link.name} was stopped dead in motion`, {
@@ -62,11 +62,7 @@ function sendFirst(parts: ReportParts, underway: ReportUnderway): void {
   parts.sender.urgent(quickStop);
 }
 
-async function comeToRest(
-  parts: ReportParts,
-  underway: ReportUnderway,
-  calledMs: number,
-): Promise<StopReport> {
+async function comeToRest(parts: ReportParts, underway: Underway, calledMs: number): Promise<StopReport> {
   if (parts.sender.halted !== undefined) return halted(parts, calledMs);
   const limitMs = parts.stopsAtOnce ? quickStopMs : longestMotionMs(parts) * 1.5 + quickStopMs;
   try {

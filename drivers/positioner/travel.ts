@@ -51,6 +51,28 @@ export interface Stand {
   takenUp: boolean;
 }
 
+/** Where each axis stands: where we sent it, as long as it is still there; otherwise where it says to be. */
+export function standsOf(
+  axes: readonly AxisSetup[],
+  sentDeg: Position,
+  reportedDeg: Position,
+): Record<AxisName, Stand> {
+  return Object.fromEntries(
+    axes.map((axis) => {
+      const reported = reportedDeg[axis.name] ?? Number.NaN;
+      const sent = sentDeg[axis.name];
+      const takenUp = sent !== undefined && Math.abs(sent - reported) <= axis.toleranceDeg;
+      return [axis.name, { deg: takenUp ? sent : reported, takenUp }];
+    }),
+  );
+}
+
+/** The longest wait of the axes that a target names. */
+export function settleMsOf(axes: readonly AxisSetup[], target: Position): number {
+  const named = axes.filter((axis) => target[axis.name] !== undefined);
+  return Math.max(0, ...named.map((axis) => axis.settleMs));
+}
+
 /**
  * The straight moves that lead to a target, each within travel. One is enough where an axis comes a full
  * approach stretch from its side, or stands with its play already taken up on that side; otherwise
