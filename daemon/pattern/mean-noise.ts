@@ -1,11 +1,8 @@
 // The noise of the mean of several visits, as their scatter shows it: what the mean reflection of an antenna
 // can still be moved by. Unlike tie-noise.ts it takes no common drift out: a reflection that drifts is known
 // less well, and an antenna that reflects nothing has no level to take a drift from.
+import { pooledPower } from './flat-window.ts';
 import { finite, PatternError } from './pattern-error.ts';
-import { flatShare } from './tie-ratio.ts';
-
-/** Fewer values than this in a window say little of their scatter. */
-const fewestValues = 8;
 
 /**
  * Noise of the mean over visits at each frequency.
@@ -35,19 +32,8 @@ export function meanNoise(
   }
   if (visits.length < 2) return undefined;
   const power = Float64Array.from({ length: count }, (_, k) => scatter(visits, k));
-  const noise = new Float64Array(count);
-  let from = 0;
-  let to = 0;
-  let sum = 0;
-  for (let k = 0; k < count; k += 1) {
-    const hz = frequenciesHz[k]!;
-    while (to < count && frequenciesHz[to]! <= hz * (1 + flatShare)) sum += power[to++]!;
-    while (frequenciesHz[from]! < hz * (1 - flatShare)) sum -= power[from++]!;
-    const values = to - from;
-    if (values * (visits.length - 1) < fewestValues) return undefined;
-    noise[k] = Math.sqrt(Math.max(0, sum / values / visits.length));
-  }
-  return noise;
+  const pooled = pooledPower(frequenciesHz, power, visits.length - 1);
+  return pooled && Float64Array.from(pooled, (one) => Math.sqrt(Math.max(0, one.power / visits.length)));
 }
 
 /** Noise power of one visit at one frequency. */

@@ -1,8 +1,9 @@
 // The noise of single sweeps as repeated boresight visits show it: what is left between a tie and the first
 // one when their common drift is taken out. Part of the range's floor, not yet its leakage.
 import { amplitudeDb, lowestLevelDb } from './decibels.ts';
+import { type PooledPower, pooledPower } from './flat-window.ts';
 import { PatternError } from './pattern-error.ts';
-import { flatShare, tieRatio } from './tie-ratio.ts';
+import { tieRatio } from './tie-ratio.ts';
 
 /**
  * Noise level of one sweep at each frequency.
@@ -32,7 +33,8 @@ export function tieNoiseDb(
     });
   }
   const power = meanSquares(frequenciesHz, first, later);
-  return pooledDb(frequenciesHz, power, later.length);
+  const pooled = pooledPower(frequenciesHz, power, later.length);
+  return pooled && Float64Array.from(pooled, levelDb);
 }
 
 /** Mean over the later ties of |tie − r·first|²/(1 + |r|²), per frequency. */
@@ -56,28 +58,8 @@ function meanSquares(
   return mean;
 }
 
-/** Fewer values than this in a window say little of their scatter. */
-const fewestValues = 8;
-
-function pooledDb(
-  frequenciesHz: ArrayLike<number>,
-  power: Float64Array,
-  visits: number,
-): Float64Array | undefined {
-  const count = power.length;
-  const pooled = new Float64Array(count);
-  let from = 0;
-  let to = 0;
-  let sum = 0;
-  for (let k = 0; k < count; k += 1) {
-    const hz = frequenciesHz[k]!;
-    while (to < count && frequenciesHz[to]! <= hz * (1 + flatShare)) sum += power[to++]!;
-    while (frequenciesHz[from]! < hz * (1 - flatShare)) sum -= power[from++]!;
-    const values = to - from;
-    if (values * visits < fewestValues) return undefined;
-    // One complex factor was fitted to the window: two of its 2·values real numbers are spent.
-    const spent = values > 1 ? values / (values - 1) : 1;
-    pooled[k] = Math.max(lowestLevelDb, amplitudeDb(Math.sqrt(Math.max(0, (sum / values) * spent))));
-  }
-  return pooled;
+/** One complex factor was fitted to the window: two of its 2·values real numbers are spent. */
+function levelDb({ power, values }: PooledPower): number {
+  const spent = values > 1 ? values / (values - 1) : 1;
+  return Math.max(lowestLevelDb, amplitudeDb(Math.sqrt(Math.max(0, power * spent))));
 }

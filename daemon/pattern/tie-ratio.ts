@@ -2,10 +2,8 @@
 // couplers and receivers is smooth over frequency, while boresight may sit in a null at some of them.
 //
 //   r(f) = Σ tie·first* / Σ |first|²   over the neighbours of f within ±2.5 % of it
+import { flatWindows } from './flat-window.ts';
 import { finite, PatternError } from './pattern-error.ts';
-
-/** Half the window over which drift counts as flat, as a share of the frequency. */
-export const flatShare = 0.025;
 
 /**
  * Complex ratio of a tie to the first tie, at each frequency.
@@ -35,14 +33,10 @@ export function tieRatio(
       tie: tie.length,
     });
   }
+  for (let k = 0; k < count; k += 1) finite('frequencyHz', frequenciesHz[k]!);
   const sums = runningSums(first, tie);
   const ratio = new Float64Array(2 * count);
-  let from = 0;
-  let to = 0;
-  for (let k = 0; k < count; k += 1) {
-    const frequencyHz = finite('frequencyHz', frequenciesHz[k]!);
-    while (frequenciesHz[from]! < frequencyHz * (1 - flatShare)) from += 1;
-    while (to < count && frequenciesHz[to]! <= frequencyHz * (1 + flatShare)) to += 1;
+  for (const [k, { from, to }] of flatWindows(frequenciesHz).entries()) {
     const power = sums.power[to]! - sums.power[from]!;
     ratio[2 * k] = power > 0 ? (sums.re[to]! - sums.re[from]!) / power : 1;
     ratio[2 * k + 1] = power > 0 ? (sums.im[to]! - sums.im[from]!) / power : 0;
