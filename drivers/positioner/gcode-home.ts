@@ -1,13 +1,12 @@
 // Making the coordinates true: the controller's homing cycle where axes have switches, unlocking where they
 // have none. An axis without a switch is believed at the controller's zero, but not after a restart moved that
 // zero under it: then somebody has to set it by hand.
-import { DriverError } from '../errors.ts';
+import { demandContinuity } from './axis-continuity.ts';
 import { alarmError } from './gcode-failures.ts';
 import { alarmMeaning } from './gcode-meanings.ts';
 import { fallToZero, noteMemory, setModes } from './gcode-memory.ts';
 import { askTwice, awaitRest, type GcodeParts, pollMs, readPlaced } from './gcode-parts.ts';
 import { homingSeconds } from './gcode-settings.ts';
-import type { Position } from './positioner.ts';
 
 const bannerMs = 3_000;
 /** A failed cycle is followed by a banner within some 25 ms, even where its alarm was lost on the wire. */
@@ -40,7 +39,7 @@ export async function homeAxes(parts: GcodeParts, options: HomeOptions, signal: 
   await noteMemory(parts, signal);
   await setModes(parts, signal);
   const placed = await readPlaced(parts, signal);
-  if (!options.believeZeroAfterRestart) demandContinuity(parts, placed.position);
+  if (!options.believeZeroAfterRestart) demandContinuity(parts.axes, parts.reference, placed.position);
   parts.reference.trust(placed);
 }
 
@@ -50,15 +49,4 @@ async function leaveMuteAlarm(parts: GcodeParts, signal: AbortSignal): Promise<v
   if (alarm === undefined || alarmMeaning(alarm).wayOut !== 'reset') return;
   await parts.sender.reset(bannerMs, signal);
   await parts.clock.sleep(pollMs, signal);
-}
-
-function demandContinuity(parts: GcodeParts, position: Position): void {
-  for (const axis of parts.axes) {
-    if (axis.homing === 'switch' || parts.reference.isContinuous(axis, position)) continue;
-    throw new DriverError(
-      'POSITIONER_REFERENCE_LOST',
-      `${axis.name} has no homing switch and its zero has moved: set it to zero by hand and connect anew`,
-      { axis: axis.name, reportedDeg: position[axis.name] ?? 'unknown' },
-    );
-  }
 }

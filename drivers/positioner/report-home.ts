@@ -1,8 +1,7 @@
 // Making the coordinates true on a position-report controller: its homing cycle for axes with a switch; an axis
 // without one is believed at the controller's zero, unless a restart or a quick stop may have moved that zero.
 // A switch that is never found halts the controller for good: POSITIONER_ALARM.
-import { DriverError } from '../errors.ts';
-import type { Position } from './positioner.ts';
+import { demandContinuity } from './axis-continuity.ts';
 import { longestMotionMs, type ReportParts, restingPlace, setModes } from './report-parts.ts';
 
 export interface ReportHomeOptions {
@@ -35,18 +34,7 @@ export async function homeReportAxes(
   // A restart since, or homing itself, may have left other modes.
   await setModes(parts, signal);
   const position = await restingPlace(parts, homingMs, signal);
-  if (!options.believeZeroAfterRestart) demandContinuity(parts, position);
+  if (!options.believeZeroAfterRestart) demandContinuity(parts.axes, parts.reference, position);
   parts.reference.trust(position);
   parts.reference.publish(position, false);
-}
-
-function demandContinuity(parts: ReportParts, position: Position): void {
-  for (const axis of parts.axes) {
-    if (axis.homing === 'switch' || parts.reference.isContinuous(axis, position)) continue;
-    throw new DriverError(
-      'POSITIONER_REFERENCE_LOST',
-      `${axis.name} has no homing switch and its zero has moved: set it to zero by hand and connect anew`,
-      { axis: axis.name, reportedDeg: position[axis.name] ?? 'unknown' },
-    );
-  }
 }
